@@ -1,0 +1,3 @@
+"""labstat: validation statistics for a clinical laboratory."""
+
+__version__ = "0.1.0"

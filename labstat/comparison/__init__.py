@@ -1,0 +1,1 @@
+"""Lines, differences, bias: arrays in, frozen results out."""

@@ -1,0 +1,1 @@
+"""Reference limits: arrays in, frozen results out."""

@@ -1,0 +1,1 @@
+"""Counts to estimates to intervals: arrays only."""
