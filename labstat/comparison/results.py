@@ -26,7 +26,8 @@ class Bias:
 class Difference:
     """Mean difference and limits of agreement (Bland & Altman 1986, 1999), candidate minus comparative.
 
-    ``scale`` is ``"absolute"`` (units) or ``"percent"`` (of the mean of the two results).
+    ``scale`` is ``"absolute"`` (units) or ``"percent"`` (of the mean of the two results). ``normal`` holds the t
+    intervals of mean, lower and upper limit beside those that were asked for.
     """
 
     scale: Literal["absolute", "percent"]
@@ -35,6 +36,7 @@ class Difference:
     sd: float
     lower: Estimate
     upper: Estimate
+    normal: tuple[Estimate, Estimate, Estimate]
 
 
 @dataclass(frozen=True, slots=True)
