@@ -19,7 +19,7 @@ class BiasAtLevel:
     (``None`` below five days). ``leading`` is the wider of the two. ``near``: specimens whose comparative result lies
     within 25 % of the level. ``covered``: the level lies in the specimens' range. ``censored_near``: specimens with a
     censored result within a factor of two of the level. ``without_specimen``: single specimens in the order of how far
-    their absence moves the interval, those that matter first, at most five. ``without_outliers``: interval when the
+    their absence moves the interval, those that matter first, at most eight. ``without_outliers``: interval when the
     flagged outliers are left out (``None`` when none is flagged).
     """
 
@@ -64,7 +64,7 @@ class ComparisonResult:
     outliers: tuple[Outlier, ...]
     days: int | None  # number of days, None when unknown
     unit_of_resampling: str  # "specimens" or "subjects"
-    correlation: float
+    correlation: float | None  # Pearson; None when a procedure gave one value only
     equal_pairs: int  # specimens with x == y
     equal_after_shift: int  # specimens whose y equals the previous or next specimen's x (the larger of both shifts)
     replicates: tuple[int, int]  # largest number of replicates, comparative and candidate
@@ -72,11 +72,15 @@ class ComparisonResult:
 
 @dataclass(frozen=True, slots=True)
 class NotComputed:
-    """A part of a study that could not be computed, and why."""
+    """A part of a study that could not be computed, and why.
+
+    ``whole`` is false for a part whose absence leaves the study's questions answered (a second line, say).
+    """
 
     study: str  # "comparison" or "reference"
     where: str  # the candidate, or the partition in words, "" for the whole
     reason: str
+    whole: bool = True
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Hashable, Sequence
 from typing import Literal
 
 import numpy as np
@@ -10,9 +11,10 @@ import numpy.typing as npt
 from scipy import stats
 
 from labstat.comparison.moments import Moments
-from labstat.comparison.pairs import checked_pairs, checked_share
+from labstat.comparison.pairs import checked_pairs, checked_share, cluster_members
 from labstat.comparison.results import Array, Difference
 from labstat.errors import ArgumentError, NotComputableError
+from labstat.resample.counts import Counts
 from labstat.resample.engine import Statistic, bootstrap, by_cluster
 from labstat.resample.estimate import Estimate
 from labstat.resample.intervals import KINDS, estimate_from
@@ -47,15 +49,16 @@ def difference(
     level: float = 0.95,
     resamples: int = 9999,
     seed: int | None = None,
-    members: npt.NDArray[np.intp] | None = None,
+    clusters: Sequence[Hashable] | None = None,
 ) -> Difference:
     """Mean difference y - x and limits of agreement, each with an interval.
 
     ``x``, ``y``: n finite numbers each, n >= 3. Limits are mean - 1.96 s and mean + 1.96 s with s of n - 1 degrees of
     freedom. ``interval``: ``"calibrated"``, ``"percentile"``, ``"bca"``, ``"jackknife"`` or ``"normal"``: t intervals
     with the limits' standard error s √(1/n + z²/(2(n − 1))) (Bland & Altman 1999), which are given beside the others
-    always. ``members``: the cluster of each pair, resampled together. When not to use it: differences that grow with the
-    level (use percent), means of replicates where single results are reported.
+    always. ``clusters``: a label a pair; pairs with one label are resampled together. The order of the pairs does not
+    matter. When not to use it: differences that grow with the level (use percent), means of replicates where single
+    results are reported.
     """
     first, second = checked_pairs(x, y)
     if scale not in ("absolute", "percent"):
@@ -63,9 +66,8 @@ def difference(
     if interval not in (*KINDS, "normal"):
         raise ArgumentError("interval", f"must be one of {', '.join((*KINDS, 'normal'))}", interval)
     checked_share("level", level)
-    if members is None:
-        order = np.lexsort((second, first))
-        first, second = first[order], second[order]
+    order = np.lexsort((second, first))
+    first, second = first[order], second[order]
     d = differences(first, second, scale=scale)
     normal = normal_intervals(d, level=level)
     sd = float(np.std(d, ddof=1))
@@ -73,7 +75,8 @@ def difference(
         return Difference(scale, d.size, normal[0], sd, normal[1], normal[2], normal)
     statistic = agreement(d)
     units = d.size
-    if members is not None:
+    if clusters is not None:
+        members = cluster_members(clusters, order)
         statistic, units = by_cluster(statistic, members), int(members.max()) + 1
     used_seed = fresh_seed() if seed is None else int(seed)
     inner = INNER if interval in ("calibrated", "percentile") else 0
@@ -86,7 +89,7 @@ def agreement(d: Array) -> Statistic:
     """Mean, lower and upper limit of agreement by counts, (rows, 3); NaN for a resample of one unit only."""
     moments = Moments(d, d)
 
-    def by_counts(counts: np.ndarray) -> Array:  # type: ignore[type-arg]
+    def by_counts(counts: Counts) -> Array:
         mean, _, squares, _, _ = moments(counts)
         total = counts.sum(axis=1, dtype=np.int64)
         with np.errstate(invalid="ignore", divide="ignore"):

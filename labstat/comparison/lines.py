@@ -2,14 +2,14 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Hashable, Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
 import numpy.typing as npt
 
 from labstat.comparison.moments import deming, ordinary
-from labstat.comparison.pairs import checked_pairs, checked_share, checked_values
+from labstat.comparison.pairs import checked_pairs, checked_share, checked_values, cluster_members
 from labstat.comparison.passing_bablok import RankInterval, pair_slopes, passing_bablok, rank_interval
 from labstat.comparison.results import Array, Band, Bias
 from labstat.comparison.weighted_deming import weighted_deming
@@ -82,7 +82,7 @@ def fit_line(
     resamples: int = 9999,
     seed: int | None = None,
     lowest: float = 0.0,
-    clusters: Sequence[object] | None = None,
+    clusters: Sequence[Hashable] | None = None,
 ) -> LineFit:
     """Fit a line through pairs of results and resample it.
 
@@ -117,12 +117,12 @@ def fit_line(
     inner = INNER[method] if interval in ("calibrated", "percentile", RANK) else 0
     units = first.size
     if clusters is not None:
-        members = _members(clusters, order)
+        members = cluster_members(clusters, order)
         statistic, units = by_cluster(statistic, members), int(members.max()) + 1
     draws = bootstrap(statistic, units, resamples=int(resamples), seed=used_seed, inner=inner)
+    kind = _bootstrap_kind(interval)
     made = [
-        _with_rank(estimate_from(draws.parameter(i), interval=_bootstrap_kind(interval), level=level), ranks, i, interval)
-        for i in (0, 1)
+        _with_rank(estimate_from(draws.parameter(i), interval=kind, level=level), ranks, i, interval) for i in (0, 1)
     ]
     return LineFit(
         method, first.size, made[0], made[1],
@@ -186,17 +186,6 @@ def _check_interval(interval: str, method: str) -> None:
 
 def _bootstrap_kind(interval: str) -> str:
     return "calibrated" if interval == RANK else interval
-
-
-def _members(clusters: Sequence[object], order: npt.NDArray[np.intp]) -> npt.NDArray[np.intp]:
-    if len(clusters) != order.size:
-        raise ArgumentError("clusters", f"must hold one label a pair, {order.size} in all, but holds", len(clusters))
-    # numbered by their first pair in sorted order: independent of the labels' own order
-    numbers: dict[object, int] = {}
-    members = np.array([numbers.setdefault(clusters[i], len(numbers)) for i in order], dtype=np.intp)
-    if len(numbers) < 2:
-        raise ArgumentError("clusters", "must hold at least two different labels, but holds", len(numbers))
-    return members
 
 
 def _statistic(

@@ -2,9 +2,13 @@
 
 from __future__ import annotations
 
+from typing import Any
+
 import numpy as np
+import numpy.typing as npt
 
 from labstat.comparison.results import Array
+from labstat.resample.counts import Counts
 from labstat.resample.engine import Statistic
 
 _ROWS = 64
@@ -27,7 +31,7 @@ class Moments:
         dx, dy = dx / self.scale_x, dy / self.scale_y
         self.columns = np.column_stack([np.ones_like(dx), dx, dy, dx * dx, dy * dy, dx * dy])
 
-    def __call__(self, weights: np.ndarray) -> tuple[Array, Array, Array, Array, Array]:  # type: ignore[type-arg]
+    def __call__(self, weights: npt.NDArray[Any]) -> tuple[Array, Array, Array, Array, Array]:
         """Mean of x, mean of y, u, q, p for each row of counts or weights (rows, n), in the scale of the data."""
         rows = weights.shape[0]
         padded = np.zeros((-(-rows // _ROWS) * _ROWS, weights.shape[1]))
@@ -67,7 +71,7 @@ def ordinary(x: Array, y: Array) -> Statistic:
     """Least squares of y on x by counts: (rows, 2) slope and intercept. Biased low when x has error of its own."""
     moments = Moments(x, y)
 
-    def by_counts(counts: np.ndarray) -> Array:  # type: ignore[type-arg]
+    def by_counts(counts: Counts) -> Array:
         mx, my, u, _, p = moments(counts)
         with np.errstate(divide="ignore", invalid="ignore"):
             slope = np.where(u == 0.0, np.nan, p / u)
@@ -84,7 +88,7 @@ def deming(x: Array, y: Array, variance_ratio: float) -> Statistic:
     """
     moments = Moments(x, y)
 
-    def by_counts(counts: np.ndarray) -> Array:  # type: ignore[type-arg]
+    def by_counts(counts: Counts) -> Array:
         mx, my, u, q, p = moments(counts)
         slope = deming_slope(u, q, p, variance_ratio)
         return np.column_stack([slope, my - slope * mx])

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Hashable, Sequence
+
 import numpy as np
 import numpy.typing as npt
 
@@ -38,3 +40,15 @@ def checked_share(name: str, value: float) -> float:
     if isinstance(value, bool) or not isinstance(value, (int, float, np.floating)) or not 0.0 < value < 1.0:
         raise ArgumentError(name, "must lie between 0 and 1", value)
     return float(value)
+
+
+def cluster_members(clusters: Sequence[Hashable], order: npt.NDArray[np.intp]) -> npt.NDArray[np.intp]:
+    """The cluster number of each pair, taken in ``order``; raises :class:`ArgumentError` for bad labels."""
+    if len(clusters) != order.size:
+        raise ArgumentError("clusters", f"must hold one label a pair, {order.size} in all, but holds", len(clusters))
+    # numbered by their first pair in sorted order: independent of the labels' own order
+    numbers: dict[Hashable, int] = {}
+    members = np.array([numbers.setdefault(clusters[i], len(numbers)) for i in order], dtype=np.intp)
+    if len(numbers) < 2:
+        raise ArgumentError("clusters", "must hold at least two different labels, but holds", len(numbers))
+    return members

@@ -4,8 +4,8 @@ In a resample with counts c, a pair (i, j) stands c_i * c_j times among the slop
 median of slopes that were sorted once. The weighted number of slopes before a position is a quadratic form in the
 counts: one matrix product gives it for many resamples. Each resample's median is predicted by one Newton step
 from the full sample's, and resamples sorted by prediction are solved in groups: one more product up to the
-lower edge of the group's bracket, and a short cumulative sum inside it. All sums are whole numbers held exactly, so that
-the result is that of refitting, to the last bit, whatever the grouping.
+lower edge of the group's bracket, and a short cumulative sum inside it. All sums are whole numbers held exactly, so
+that the result is that of refitting, to the last bit, whatever the grouping.
 """
 
 from __future__ import annotations
@@ -19,7 +19,7 @@ from labstat.resample.counts import Counts
 
 Index = npt.NDArray[np.int64]
 
-_GROUP = 256
+_GROUP = 128
 _EXACT_FLOAT32 = 2**24
 _BRACKET_CELLS = 4_000_000
 
@@ -27,18 +27,19 @@ _BRACKET_CELLS = 4_000_000
 class ShiftedMedian:
     """Slope of each resample; NaN where the middle slopes are not positive and finite."""
 
-    __slots__ = ("_dtype", "_full", "pairs")
+    __slots__ = ("_full", "pairs")
 
     def __init__(self, pairs: PairSlopes) -> None:
         self.pairs = pairs
-        # rows of counts sum to about n, so no partial sum exceeds n squared (clusters: twice that, say)
-        self._dtype: type[np.floating] = np.float32 if 4 * pairs.n**2 < _EXACT_FLOAT32 else np.float64
-        self._full = self._adjacency(0, pairs.slopes.size)
+        self._full = self._adjacency(0, pairs.slopes.size, np.float32)
 
     def __call__(self, counts: Counts) -> Array:
         """Slopes of the rows of counts (rows, n)."""
-        weights = np.ascontiguousarray(counts, dtype=self._dtype)
-        total = self._before(self._full, weights)
+        most = int(counts.sum(axis=1, dtype=np.int64).max(initial=0))
+        # no sum exceeds half the square of a row's total: short floats hold it exactly up to here
+        exact: type[np.float32] | type[np.float64] = np.float32 if most**2 < 2 * _EXACT_FLOAT32 else np.float64
+        weights = np.ascontiguousarray(counts, dtype=exact)
+        total = self._before(self._full.astype(exact, copy=False), weights)
         low_rank = (total + 1) // 2
         high_rank = total // 2 + 1
         low, high = self._positions(weights, total, low_rank, high_rank)
@@ -54,8 +55,8 @@ class ShiftedMedian:
         result[ok] = np.where(positive, middle, np.nan)
         return result
 
-    def _adjacency(self, start: int, stop: int) -> npt.NDArray[np.floating]:
-        matrix = np.zeros((self.pairs.n, self.pairs.n), dtype=self._dtype)
+    def _adjacency(self, start: int, stop: int, dtype: npt.DTypeLike) -> npt.NDArray[np.floating]:
+        matrix: npt.NDArray[np.floating] = np.zeros((self.pairs.n, self.pairs.n), dtype=dtype)
         self._add(matrix, start, stop)
         return matrix
 
@@ -64,7 +65,8 @@ class ShiftedMedian:
         matrix[self.pairs.first[start:stop], self.pairs.second[start:stop]] = 1.0
 
     def _before(self, adjacency: npt.NDArray[np.floating], weights: npt.NDArray[np.floating]) -> Index:
-        return np.rint(np.einsum("ij,ij->i", weights @ adjacency, weights)).astype(np.int64)
+        number: Index = np.rint(np.einsum("ij,ij->i", weights @ adjacency, weights)).astype(np.int64)
+        return number
 
     def _positions(
         self, weights: npt.NDArray[np.floating], total: Index, low_rank: Index, high_rank: Index
@@ -77,7 +79,7 @@ class ShiftedMedian:
         if todo.size == 0:
             return low, high
         middle = size // 2
-        cut = self._before(self._adjacency(0, middle), weights)
+        cut = self._before(self._adjacency(0, middle, weights.dtype), weights)
         density = np.maximum(total, 1) / size
         guess = np.clip(middle + (low_rank - cut) / density, 0, size - 1).astype(np.int64)
         reach = max(16, size // 100)
@@ -93,7 +95,7 @@ class ShiftedMedian:
     ) -> Index:
         """Solve what lies within ``reach`` of its guess; returns the rows that do not."""
         size = self.pairs.slopes.size
-        adjacency = self._adjacency(0, 0)
+        adjacency = self._adjacency(0, 0, weights.dtype)
         done_to = 0
         missed: list[Index] = []
         start = 0
@@ -114,12 +116,12 @@ class ShiftedMedian:
             inside = columns[self.pairs.first[begin:end]] * columns[self.pairs.second[begin:end]]
             cumulated = np.cumsum(inside, axis=0, out=inside)
             before_low, before_high = low_rank[group] - base, high_rank[group] - base
-            at_low = np.count_nonzero(cumulated < before_low.astype(self._dtype), axis=0)
+            at_low = np.count_nonzero(cumulated < before_low.astype(weights.dtype), axis=0)
             at_high = at_low.copy()
             even = before_high > before_low
             if np.any(even):
                 at_high[even] = np.count_nonzero(
-                    cumulated[:, even] < before_high[even].astype(self._dtype), axis=0
+                    cumulated[:, even] < before_high[even].astype(weights.dtype), axis=0
                 )
             found = (before_low > 0) & (at_high < end - begin)
             low[group[found]] = begin + at_low[found]

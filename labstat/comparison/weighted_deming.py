@@ -6,6 +6,7 @@ import numpy as np
 
 from labstat.comparison.moments import Moments, deming_slope
 from labstat.comparison.results import Array
+from labstat.resample.counts import Counts
 from labstat.resample.engine import Statistic
 
 _TOLERANCE = 1e-11
@@ -23,7 +24,7 @@ def weighted_deming(x: Array, y: Array, variance_ratio: float, *, lowest: float 
     """
     moments = Moments(x, y)
 
-    def by_counts(counts: np.ndarray) -> Array:  # type: ignore[type-arg]
+    def by_counts(counts: Counts) -> Array:
         c = counts.astype(np.float64)
         result = np.full((c.shape[0], 2), np.nan)
         mx, my, u, q, p = moments(c)

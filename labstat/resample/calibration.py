@@ -15,12 +15,17 @@ DISTINCT = 20
 
 @dataclass(frozen=True, slots=True)
 class Calibration:
-    """The tail area that covers at the level asked for; ``reason`` is set when it is not to be trusted."""
+    """The tail area that covers at the level asked for.
+
+    ``reason`` is set when it is not to be trusted. ``at_bound``: the tail asked for is smaller than the second level
+    can tell, and ``tail`` is the smallest that it can: wider than the percentile interval, perhaps not wide enough.
+    """
 
     tail: float
     spread: float
     attained: float | None
-    reason: str | None
+    at_bound: bool = False
+    reason: str | None = None
 
 
 def calibrate(sample: Sample, *, level: float) -> Calibration:
@@ -43,7 +48,7 @@ def calibrate(sample: Sample, *, level: float) -> Calibration:
     if u.size < 0.99 * usable.size or u.size == 0:
         return Calibration(
             alpha / 2, 0.0, None,
-            "the statistic does not exist in too many second-level resamples",
+            reason="the statistic does not exist in too many second-level resamples",
         )
     attained = float(np.mean((u > alpha / 2) & (u < 1.0 - alpha / 2)))
     margin = np.sort(np.minimum(u, 1.0 - u))
@@ -51,10 +56,16 @@ def calibrate(sample: Sample, *, level: float) -> Calibration:
     tail = at_rank(margin, rank)
     step = float(np.sqrt(margin.size * alpha * (1.0 - alpha)))
     spread = (at_rank(margin, rank + step) - at_rank(margin, rank - step)) / 2.0
-    reason = None
-    if np.unique(u).size < DISTINCT:
-        reason = f"second-level resamples give only {np.unique(u).size} distinct shares"
-    elif tail < 1.0 / (inner + 1):
-        reason = "the calibrated tail is at its bound"
-    return Calibration(tail, spread, attained, reason)
-
+    distinct = int(np.unique(u).size)
+    if distinct < DISTINCT:
+        return Calibration(
+            alpha / 2, 0.0, attained,
+            reason=f"second-level resamples give only {distinct} distinct shares",
+        )
+    bound = 1.0 / (inner + 1)
+    if tail < bound:
+        return Calibration(
+            bound, spread, attained, at_bound=True,
+            reason=f"the calibrated tail is smaller than {inner} second-level resamples can tell",
+        )
+    return Calibration(tail, spread, attained)

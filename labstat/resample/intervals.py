@@ -17,6 +17,9 @@ from labstat.resample.ranks import at_rank, at_tail
 
 KINDS = ("calibrated", "percentile", "bca", "jackknife")
 
+AT_BOUND = "calibrated-bound"
+"""Used instead of a calibrated interval whose tail is smaller than the second level can tell: the smallest it can."""
+
 FAILED_SHARE = 0.01
 """Above this share of failed resamples there is no interval."""
 
@@ -49,9 +52,11 @@ def tails(sample: Sample, *, interval: str, level: float) -> Tails:
         calibration = calibrate(sample, level=level)
         attained = calibration.attained
         if interval == "calibrated":
-            if calibration.reason is None:
+            if calibration.reason is None or calibration.at_bound:
+                kind, replaced = ("calibrated", None) if calibration.reason is None else (AT_BOUND, "calibrated")
                 return Tails(
-                    calibration.tail, 1.0 - calibration.tail, "calibrated", calibration.spread, attained
+                    calibration.tail, 1.0 - calibration.tail, kind, calibration.spread, attained, replaced,
+                    calibration.reason,
                 )
             return Tails(
                 alpha / 2, 1.0 - alpha / 2, "percentile", 0.0, attained, "calibrated", calibration.reason
