@@ -43,7 +43,7 @@ class Moments:
             q = np.maximum(syy - sy * my, 0.0)
             p = sxy - sx * my
         # below rounding there is no spread: such a resample holds one point only
-        tiny = 1e-13 * total
+        tiny = 1e-14 * total
         u, q = np.where(u <= tiny, 0.0, u), np.where(q <= tiny, 0.0, q)
         p = np.where((u == 0.0) | (q == 0.0), 0.0, p)
         return (

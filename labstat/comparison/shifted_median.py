@@ -38,8 +38,8 @@ class ShiftedMedian:
         most = int(counts.sum(axis=1, dtype=np.int64).max(initial=0))
         # no sum exceeds half the square of a row's total: short floats hold it exactly up to here
         exact: type[np.float32] | type[np.float64] = np.float32 if most**2 < 2 * _EXACT_FLOAT32 else np.float64
-        weights = np.ascontiguousarray(counts, dtype=exact)
-        total = self._before(self._full.astype(exact, copy=False), weights)
+        weights: npt.NDArray[np.floating] = np.ascontiguousarray(counts, dtype=exact)
+        total = self._before(self._full.astype(weights.dtype, copy=False), weights)
         low_rank = (total + 1) // 2
         high_rank = total // 2 + 1
         low, high = self._positions(weights, total, low_rank, high_rank)

@@ -52,7 +52,8 @@ class Judgement:
 
     ``urgency`` sorts the overview (smaller first): 0 could not be computed, 1 beyond, 2 not covered, 3 unsettled,
     4 stop, 5 within with cautions, 6 within, 7 no criterion. ``closeness`` orders within one urgency: the largest
-    share of the allowance that an interval reaches (larger first). ``next_action`` is a few words for the overview.
+    share of the allowance that an interval reaches (larger first). ``next_action`` is a few words for the overview,
+    ``situation`` the row of the proposal table that held, in words.
     """
 
     findings: tuple[Finding, ...]
@@ -62,3 +63,4 @@ class Judgement:
     closeness: float
     next_action: str
     not_examined: tuple[str, ...]
+    situation: str = ""
