@@ -113,7 +113,7 @@ def slow_deming(xs: Sequence[float], ys: Sequence[float], variance_ratio: float 
 def slow_weighted_deming(
     xs: Sequence[float], ys: Sequence[float], variance_ratio: float = 1.0, rounds: int = 2000
 ) -> tuple[float, float]:
-    """Weighted Deming with 1/((X + λY)/(1 + λ))² and one point after the other, a fixed number of rounds."""
+    """Weighted Deming with 1/((X + λY)/(1 + λ))² and one point after the other, until it rests."""
     slope, intercept = slow_deming(xs, ys, variance_ratio)
     stretch = math.sqrt(variance_ratio)
     for _ in range(rounds):
@@ -133,6 +133,6 @@ def slow_weighted_deming(
         along = np.linalg.eigh(scatter)[1][:, 1]
         slope, before = float(along[1] / along[0]) / stretch, slope
         intercept = my - slope * mx
-        if slope == before:
+        if abs(slope - before) <= 1e-14 * abs(slope):
             break
     return slope, intercept
