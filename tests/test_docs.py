@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import json
 import re
 from pathlib import Path
 
@@ -34,3 +35,61 @@ def test_the_page_of_cautions_lists_every_code_with_its_weights_and_no_other() -
         for weight in re.findall(r"`(\w+)`", cells[1])
     }
     assert listed == expected
+
+
+ESTIMATE = "An estimate"
+SAMPLES = DOCS.parent / "sample_runs"
+
+
+def documented_results() -> tuple[set[str], set[str]]:
+    """Every path of results.json that the page names, and the keys of an estimate."""
+    text = (DOCS / "results.md").read_text(encoding="utf-8")
+    paths: set[str] = set()
+    estimate: set[str] = set()
+    for part in re.split(r"^#+ ", text, flags=re.MULTILINE):
+        title, _, body = part.partition("\n")
+        keys = {
+            key
+            for line in body.splitlines() if line.startswith("| `")
+            for key in re.findall(r"`([a-z_]+)`", line.split(" | ")[0])
+        }
+        if title == ESTIMATE:
+            estimate |= keys
+        elif title == "Top":
+            paths |= keys
+        else:
+            paths |= {f"{place}.{key}" for place in re.findall(r"`([a-z_.\[\]]+)`", title) for key in keys}
+    return paths, estimate
+
+
+def walk(value: object, place: str, paths: set[str], estimate: set[str]) -> None:
+    """Collect every path below ``value``; objects whose keys are the user's own or library names are not entered."""
+    if isinstance(value, list):
+        for item in value:
+            walk(item, f"{place}[]", paths, estimate)
+    elif isinstance(value, dict):
+        if {"estimate", "interval", "level"} <= set(value):
+            estimate |= set(value)
+            return
+        if place.rsplit(".", 1)[-1] in ("program", "partition", "where"):
+            return
+        for key, item in value.items():
+            path = f"{place}.{key}".lstrip(".")
+            paths.add(path)
+            walk(item, path, paths, estimate)
+
+
+def test_the_page_of_results_lists_every_key_that_the_sample_rounds_have_and_no_other() -> None:
+    found: set[str] = set()
+    found_estimate: set[str] = set()
+    for name in ("chemistry_q4", "open_data"):
+        text = (SAMPLES / name / "out" / "results.json").read_text(encoding="utf-8")
+        walk(json.loads(text), "", found, found_estimate)
+    paths, estimate = documented_results()
+    where_rows_are = {f"analytes[].rows.{study}" for study in ("comparison", "reference", "precision")}
+    assert found - paths - where_rows_are == set()
+    # what no sample round has: parts that could not be computed, and rows of an unusable analyte
+    rare = {path for path in paths if path.startswith("analytes[].not_computed[].")}
+    assert paths - found - rare == set()
+    assert found_estimate <= estimate
+    assert estimate - found_estimate <= {"replaced", "reason", "rank_attained"}
