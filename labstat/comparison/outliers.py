@@ -64,7 +64,7 @@ def search(
     1 − α / (2(n − i + 1)) quantile of Student's t with n − i − 1 degrees of freedom. The
     outliers are the first i for the *largest* i with Rᵢ > λᵢ.
 
-    The search ends early where the values still in no longer spread: an SD below 1e-9 of the largest difference, or
+    The search ends early where the values still in no longer spread: an SD below 1e-9 of the largest of them, or
     below 1e-12 of ``scale`` (the size of the results that were subtracted), is rounding, not spread. Of values that
     deviate equally the larger goes first, of equal values the one that stands first.
 
@@ -79,13 +79,13 @@ def search(
         raise ArgumentError("most", f"must lie between 1 and n - 2 = {n - 2}", most)
     if not 0.0 < checked_number("alpha", alpha) < 1.0:
         raise ArgumentError("alpha", "must lie between 0 and 1", alpha)
-    no_spread = max(1e-9 * float(np.max(np.abs(values))), 1e-12 * abs(checked_number("scale", scale)))
+    rounding = 1e-12 * abs(checked_number("scale", scale))
     still_in = np.arange(n)
     steps: list[Flagged] = []
     for i in range(1, most + 1):
         kept = values[still_in]
         deviation, spread = _deviations(kept)
-        if spread <= no_spread:
+        if spread <= max(rounding, 1e-9 * float(np.max(np.abs(kept)))):
             break
         largest = float(np.max(deviation))
         # Deviations equal but for rounding are a tie, so that the order of the rows does not choose.
