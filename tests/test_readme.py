@@ -8,7 +8,7 @@ from pathlib import Path
 
 import click
 import pytest
-from labstat.cli import main
+from labstat.cli import cli
 
 import labstat
 
@@ -52,15 +52,15 @@ def test_in_ci_the_tests_see_the_installed_wheel_and_no_checkout() -> None:
 
 def test_every_command_of_the_program_stands_in_the_readme_and_no_other() -> None:
     table = set(re.findall(r"^\| `labstat (\w+)", section("Your own round"), re.MULTILINE))
-    assert isinstance(main, click.Group)
-    assert table == set(main.commands)
+    assert isinstance(cli, click.Group)
+    assert table == set(cli.commands)
 
 
 def test_every_option_of_run_stands_in_the_readme_and_no_other() -> None:
-    assert isinstance(main, click.Group)
+    assert isinstance(cli, click.Group)
     options = {
         name
-        for parameter in main.commands["run"].params
+        for parameter in cli.commands["run"].params
         if isinstance(parameter, click.Option)
         for name in parameter.opts
         if name.startswith("--") and name != "--help"
