@@ -239,6 +239,7 @@ def _difference(difference: Difference | None) -> Json | None:
         "sd": floating(difference.sd),
         "lower": estimate_record(difference.lower),
         "upper": estimate_record(difference.upper),
+        "normal": dict(zip(("mean", "lower", "upper"), map(estimate_record, difference.normal), strict=True)),
     }
 
 
