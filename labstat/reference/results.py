@@ -12,7 +12,8 @@ class ReferenceLimits:
     """Reference limits of one group. A limit that was not asked for, or could not be computed, is ``None``.
 
     ``method`` is the one that was used (``"rank"``, ``"robust"``), ``asked`` the one in the plan (``"auto"``).
-    ``notes`` says in plain words what could not be computed and what would be needed.
+    ``notes`` says in plain words what could not be computed and what would be needed; ``failure`` why there are no
+    limits although there are enough values. ``seed`` is the one used where resamples were drawn.
     """
 
     n: int
@@ -22,6 +23,8 @@ class ReferenceLimits:
     lower: Estimate | None
     upper: Estimate | None
     notes: tuple[str, ...] = ()
+    seed: int | None = None
+    failure: str | None = None
 
 
 @dataclass(frozen=True, slots=True)
