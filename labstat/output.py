@@ -10,8 +10,9 @@ from __future__ import annotations
 import hashlib
 import json
 import os
+import re
 import shutil
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from contextlib import contextmanager, suppress
 from dataclasses import dataclass
 from pathlib import Path
@@ -21,6 +22,7 @@ from labstat.locking import Locked, locked
 
 SUMS = "SHA256SUMS"
 _MARK = "labstat results"
+_WRITTEN = re.compile(r"overview\.pdf|results\.json|reports/[^/]+\.pdf|tables/[^/]+\.csv|tables/README\.txt")
 _CLUTTER = frozenset({".DS_Store", "Thumbs.db", "desktop.ini"})  # left by desktops, nobody's work
 
 
@@ -158,7 +160,7 @@ def refuse_foreign(path: Path) -> None:
                 f"the output folder is not empty and was not written by labstat: {path}",
                 "choose another folder with --out",
             )
-        sums = _sums(path)
+        sums = _sums(path, found)
         for name in found:
             if name == SUMS:
                 continue
@@ -179,12 +181,12 @@ def _is_ours(path: Path) -> bool:
     return isinstance(record, dict) and str(record.get("format", "")).startswith(_MARK)
 
 
-def _sums(path: Path) -> dict[str, str]:
-    """What the previous run wrote, file by file; nothing is known where its list is gone."""
+def _sums(path: Path, found: Sequence[str]) -> dict[str, str]:
+    """What the previous run wrote, file by file; where its list is gone, what bears the name of something written."""
     try:
         lines = (path / SUMS).read_text(encoding="utf-8").splitlines()
-    except (OSError, UnicodeDecodeError):
-        return {}
+    except (FileNotFoundError, UnicodeDecodeError):
+        return {name: _sha256((path / name).read_bytes()) for name in found if _WRITTEN.fullmatch(name)}
     return {name: digest for digest, _, name in (line.partition("  ") for line in lines)}
 
 

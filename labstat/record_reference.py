@@ -20,6 +20,8 @@ def group_record(group: GroupResult) -> Json:
         "asked": limits.asked,
         "probabilities": [floating(p) for p in limits.probabilities],
         "notes": list(limits.notes),
+        "failure": limits.failure,
+        "seed": limits.seed,
         "adopted": _adopted(group.adopted),
         "outside_adopted": _outside(group.outside_adopted),
     }

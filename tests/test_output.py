@@ -132,6 +132,15 @@ def test_a_file_that_was_added_or_changed_since_is_not_lost(tmp_path):
     write(tmp_path / "out")
 
 
+def test_an_output_without_its_list_is_known_by_what_a_run_writes(tmp_path):
+    write(tmp_path / "out")
+    (tmp_path / "out" / SUMS).unlink()
+    write(tmp_path / "out")
+    (tmp_path / "out" / SUMS).unlink()
+    (tmp_path / "out" / "reports" / "letter.docx").write_text("dear director")
+    refused(tmp_path, r"did not write: .*letter\.docx")
+
+
 def test_a_file_added_while_the_round_is_computed_is_not_lost(tmp_path):
     write(tmp_path / "out")
     with reserved(tmp_path / "out", folder=tmp_path / "round") as output:

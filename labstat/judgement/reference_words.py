@@ -20,7 +20,8 @@ def reference_sentence(scenes: tuple[GroupScene, ...], missing: Iterable[NotComp
         for scene in scenes
         if not limits_of(scene)
     ]
-    without += [part.where or "the study" for part in missing if part.study == "reference" and part.whole]
+    if not scenes:
+        without = [part.where or "the study" for part in missing if part.study == "reference" and part.whole]
     if not computed and not without:
         return None
     none = f"no reference limits for {some(without)}" if without else ""

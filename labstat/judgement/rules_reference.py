@@ -7,7 +7,9 @@ from collections.abc import Iterator
 from labstat.judgement.rules_comparison import failed_resamples, no_interval, replaced
 from labstat.judgement.scene import GroupScene, Rule
 from labstat.judgement.wording import counted, listing, number, percent, plain, with_unit
+from labstat.reference.ranks import smallest_n
 from labstat.resample.estimate import Estimate
+from labstat.resample.exact import place_of
 
 STRONG_BELOW = 40  # common practice and CLSI EP28
 LEAST_ATTAINED = 0.02
@@ -40,6 +42,8 @@ def undercovers(estimate: Estimate) -> bool:
 
 def _not_computed(scene: GroupScene) -> str | None:
     n, least = scene.group.limits.n, scene.asked.minimum_n
+    if scene.group.limits.failure is not None:
+        return f"no reference limits for {scene.name}: {scene.group.limits.failure}"
     if n >= least:
         return None
     return (
@@ -50,7 +54,7 @@ def _not_computed(scene: GroupScene) -> str | None:
 
 def _some_missing(scene: GroupScene) -> str | None:
     limits = scene.group.limits
-    if limits.n < scene.asked.minimum_n or len(limits_of(scene)) == len(limits.probabilities):
+    if limits.n < scene.asked.minimum_n or limits.failure or len(limits_of(scene)) == len(limits.probabilities):
         return None
     why = "; ".join(limits.notes) or "the method gives none for these values"
     return f"not every limit that was asked for could be computed for {scene.name}: {why}"
@@ -77,17 +81,26 @@ def _few(scene: GroupScene) -> str | None:
 
 
 def _no_rank_interval(scene: GroupScene) -> str | None:
-    without = [(side, e) for side, _, e in limits_of(scene) if e.has_rank and e.rank_low is None]
+    n = scene.group.limits.n
+    without = [
+        (side, e, smallest_n(p, level=e.level))
+        for side, p, e in limits_of(scene)
+        if e.has_rank and e.rank_low is None and n < smallest_n(p, level=e.level)
+    ]
     if not without:
         return None
-    sides = listing(side for side, _ in without)
-    level = percent(without[0][1].level)
-    attained = [percent(e.attained) for _, e in without if e.attained is not None]
+    needed = listing(f"{least} for the {side} limit" for side, _, least in without)
+    attained = [percent(e.attained) for _, e, _ in without if e.attained is not None]
     covers = f"; the interval shown holds the true limit with probability {listing(attained)}" if attained else ""
-    return (
-        f"{scene.group.limits.n} values for {scene.name} are too few for a {level} rank interval of the {sides} "
-        f"{'limit' if len(without) == 1 else 'limits'}{covers}"
-    )
+    level = percent(without[0][1].level)
+    return f"{n} values for {scene.name} are too few for a {level} rank interval ({needed}){covers}"
+
+
+def _skewed(scene: GroupScene) -> str | None:
+    limits = scene.group.limits
+    if limits.method == "rank" or not limits.notes or not limits_of(scene):
+        return None
+    return f"{scene.name}: {'; '.join(limits.notes)}"
 
 
 def _undercovers(scene: GroupScene) -> str | None:
@@ -112,9 +125,7 @@ def _extreme(scene: GroupScene) -> str | None:
     limits = scene.group.limits
     if limits.method != "rank":
         return None
-    ends = [
-        side for side, p, _ in limits_of(scene) if p * (limits.n + 1) < 1 or p * (limits.n + 1) > limits.n
-    ]
+    ends = [side for side, p, _ in limits_of(scene) if place_of(p, limits.n).extreme]
     if not ends:
         return None
     return (
@@ -194,6 +205,7 @@ GROUP_RULES: tuple[Rule[GroupScene], ...] = (
     Rule("few-reference-values", "caution", _very_few),
     Rule("few-reference-values", "caution", _few),
     Rule("no-rank-interval", "caution", _no_rank_interval),
+    Rule("skewed-values", "caution", _skewed),
     Rule("bootstrap-undercovers", "caution", _undercovers),
     Rule("extreme-limit", "caution", _extreme),
     Rule("limit-change", "caution", _limit_change),

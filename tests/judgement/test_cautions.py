@@ -201,7 +201,7 @@ REFERENCE_CASES = {
     "no rank interval": (
         "no-rank-interval",
         "caution",
-        "lower limit",
+        "119 for the lower limit",
         group(n=100, lower=limit(45.0, 44.0, 47.0, rank_low=None, rank_high=None, attained=0.8)),
     ),
     "undercovers": (
@@ -211,6 +211,18 @@ REFERENCE_CASES = {
         group(lower=limit(45.0, 44.0, 47.0, attained=0.879, rank_low=43.0, rank_high=48.0)),
     ),
     "extreme": ("extreme-limit", "caution", "lower and upper", group(n=38)),
+    "failed": (
+        "reference-not-computed",
+        "stop",
+        "the values are all alike",
+        group(failure="the values are all alike", empty=True),
+    ),
+    "skewed": (
+        "skewed-values",
+        "caution",
+        "the values are skewed",
+        group(n=125, method="robust", notes=("the values are skewed (p = 0.001)",)),
+    ),
     "wide": ("wide-limit", "note", "wider than 0.2", group(lower=limit(44.0, 42.0, 50.1))),
     "change": (
         "limit-change",
@@ -249,7 +261,8 @@ REFERENCE_MISSES = {
     "wide-limit": group(lower=limit(44.0, 42.0, 50.0)),
     "limit-change": group(adopted=Adopted({}, 45.0, 84.0), outside=OutsideCount(130, 3, 0.005, 0.07, 3, 0.005, 0.07)),
     "reference-not-computed": group(n=20),
-    "no-rank-interval": group(),
+    "no-rank-interval": group(n=119, lower=limit(45.0, None, None, rank_low=None, rank_high=None)),
+    "skewed-values": group(method="robust"),
 }
 
 
@@ -284,3 +297,13 @@ def test_every_caution_of_two_candidates_names_its_candidate():
     made = study(comparison(level(), n=30), comparison(level(), n=30, candidate="Procedure C"))
     questions = [caution.question for caution in raised(made, "few-specimens")]
     assert questions == ["bias, Procedure B", "bias, Procedure C"]
+
+
+def test_a_group_that_failed_is_told_once():
+    missing = (NotComputed("reference", "sex F", "all alike"),)
+    made = study(comparison(level()), groups=(group(failure="all alike", empty=True),), not_computed=missing)
+    assert len(raised(made, "reference-not-computed")) == 1
+    assert judge(made, ROUND).proposal.count("sex F") == 1
+    alone = study(comparison(level()), asks_reference=True, not_computed=missing)
+    assert [caution.weight for caution in raised(alone, "reference-not-computed")] == ["stop"]
+    assert "No reference limits for sex F." in judge(alone, ROUND).proposal
