@@ -21,7 +21,7 @@ settings.register_profile(
     derandomize=True,
     database=None,
     deadline=None,
-    max_examples=50,
+    max_examples=30,
     suppress_health_check=[HealthCheck.too_slow],
 )
 settings.load_profile("labstat")

@@ -9,6 +9,7 @@ import numpy as np
 import pytest
 from slow.intervals import slow_percentile
 
+import labstat
 from labstat.comparison.differences import difference
 from labstat.comparison.lines import METHODS, fit_line
 from labstat.errors import ArgumentError, LabstatError, NotComputableError
@@ -267,3 +268,8 @@ def test_percent_differences_of_results_at_zero_are_refused() -> None:
     """A pair whose mean is not positive has no percent difference."""
     with pytest.raises(NotComputableError, match="positive"):
         difference(np.r_[X, 0.0], np.r_[Y, 0.0], scale="percent", resamples=99, seed=1)
+
+
+def test_the_line_is_reached_from_the_package_itself() -> None:
+    """``labstat.fit_line`` is the documented entry."""
+    assert labstat.fit_line is fit_line

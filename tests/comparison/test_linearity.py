@@ -44,12 +44,14 @@ def test_a_curve_gives_a_small_p_and_scatter_a_large_one() -> None:
 
 
 def test_points_enter_in_the_order_of_their_projections_not_of_x() -> None:
-    """With slope 2 a point far above stands further along the line than its x says."""
-    x = np.array([1.0, 2.0, 3.0, 4.0])
-    y = 2 * x + np.array([3.0, -0.5, -0.5, 0.5])
-    # Projections x + 2y: 11, 9, 14, 21; order 2 1 3 4 with sides − + − +; in the order of x: + − − +.
-    found = cusum(x, y, 2.0, 0.0)
-    assert found.statistic == pytest.approx(1 / math.sqrt(3), rel=1e-12)
+    """With slope 2 a point far above stands further along the line than its x, or its x + y, says.
+
+    Residuals + + − − at x = 0, 1, 2, 3 and projections x + 2y = 0.2, 10.4, 9.8, 14.8: the order is + − + −, whose
+    cusum never exceeds 1. In the order of x, or of x + y = 0.1, 5.7, 5.9, 8.9, it would reach 2.
+    """
+    x = np.array([0.0, 1.0, 2.0, 3.0])
+    y = 2 * x + np.array([0.1, 2.7, -0.1, -0.1])
+    assert cusum(x, y, 2.0, 0.0).statistic == pytest.approx(1 / math.sqrt(3), rel=1e-12)
 
 
 def test_a_falling_line_is_followed_downwards() -> None:
@@ -71,11 +73,11 @@ def test_points_level_along_the_line_enter_together() -> None:
 
 
 def test_points_on_the_line_but_for_rounding_score_nothing() -> None:
-    """0.1 · 3 is not 0.3 in floating point: such points are on the line."""
+    """3 · 0.1 is not 0.3 in floating point: such points are on the line, on whichever side their last bit lies."""
     x = np.arange(1, 31) / 10
-    y = 3 * x
-    assert np.any(y - (0.1 + 2.9999999999999996 * x - 0.1) != 0)
-    assert cusum(x, y, 2.9999999999999996, 0.0).statistic == 0.0
+    y = np.round(3 * x, 1)
+    assert set(np.sign(y - 3 * x)) == {-1.0, 0.0, 1.0}
+    assert cusum(x, y, 3.0, 0.0).statistic == 0.0
 
 
 def test_all_points_on_one_side_have_no_score() -> None:

@@ -78,6 +78,28 @@ def test_equal_differences_flag_nothing() -> None:
     x = np.arange(1, 31) / 10
     assert np.unique((x + 0.1) - x).size > 1  # rounding alone
     assert flagged((x + 0.1) - x) == ()
+    one_bit_off = np.full(30, 0.1)
+    one_bit_off[3] = np.nextafter(0.1, 1.0)
+    assert flagged(one_bit_off) == ()
+
+
+def test_of_two_values_equally_far_out_the_larger_goes_first() -> None:
+    """-8.6 and 9.2 lie 8.9 from the mean of 0.3; the last bit of either distance must not choose."""
+    tenths = [round(0.3 + side * k / 10, 1) for k in range(14) for side in (1, -1)]
+    for extremes in ([9.2, -8.6], [-8.6, 9.2]):
+        values = np.array(tenths + extremes)
+        distances = np.abs(values[-2:] - math.fsum(values) / values.size)
+        assert distances[0] != distances[1]  # by one bit, and the smaller value is the one further out
+        first, second = search(values, most=2)
+        assert (first.value, second.value) == (9.2, -8.6)
+
+
+def test_deviates_do_not_depend_on_the_order_in_the_last_bit() -> None:
+    """200 permutations of uneven numbers give one and the same deviate: the sums are exact."""
+    rng = np.random.default_rng(1)
+    for values in (rng.normal(size=50) * 10.0 ** rng.integers(-3, 3, 50), 1000.0 + rng.normal(size=50)):
+        statistics = {search(rng.permutation(values), most=1)[0].statistic for _ in range(200)}
+        assert len(statistics) == 1
 
 
 def test_rounding_of_means_is_no_spread_beside_the_results() -> None:

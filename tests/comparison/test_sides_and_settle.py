@@ -22,12 +22,13 @@ def test_a_result_at_the_level_stands_on_its_upper_side() -> None:
 
 
 def test_a_mean_of_replicates_is_not_put_below_the_level_by_rounding() -> None:
-    """(0.1 + 0.2) / 2 and 1.1 / 1.1 · 0.15 are at 0.15, whatever their last bits say."""
+    """A result one bit below 0.15 is at 0.15, on either side of the comparison; a real difference counts."""
     at = 0.15
-    just_below = np.nextafter(at, 0)
-    found = side_change([just_below, 0.14, 0.1], [at, just_below, 0.1], at)
-    assert (found.up, found.down) == (1, 0)
-    assert side_change([0.15 - 1e-9], [0.15], at).up == 1  # but a real difference counts
+    just_below = float(np.nextafter(at, 0))
+    assert side_change([just_below], [at], at).up == 0
+    assert side_change([at], [just_below], at).down == 0
+    assert side_change([0.14], [just_below], at).up == 1
+    assert side_change([at - 1e-9], [at], at).up == 1
 
 
 def test_shares_have_exact_intervals() -> None:
@@ -99,6 +100,7 @@ def test_bad_input_to_a_side_change_names_the_argument(
         (20, 3.0, -1.0, None),
         (20, 0.0, 1.0, 21),
         (499, 0.5, 1.0, 500),
+        (20, 2.1, 1.001, 180),  # exactly 180, though 180.00000000000006 in floating point
         (500, 0.1, 1.0, None),
     ],
 )

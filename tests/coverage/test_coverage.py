@@ -66,10 +66,11 @@ def test_calibrated_deming_interval_covers_under_proportional_error() -> None:
     found = slopes(prop_wide, runs=runs, n=20, seed=1, method="deming", interval="calibrated", resamples=199)
     assert all(estimate.interval.startswith("calibrated") for estimate in found)
     assert sum(holds(estimate, 1.0) for estimate in found) >= fewest_hits(runs, 0.94)
-    # The same fits say what the plain interval attains: 86 to 90 % by longer simulations, never the nominal 95 %.
+    # The same fits say what the plain interval attains. It covers 88 % (300 runs) and says 82 % on average: too little,
+    # on the safe side, and never the nominal 95 %. One fit's figure has an SD of 0.09, the mean of 60 of 0.012.
     attained = [estimate.attained for estimate in found if estimate.attained is not None]
     assert len(attained) == runs
-    assert 0.84 < np.mean(attained) < 0.93
+    assert 0.77 < np.mean(attained) < 0.90
 
 
 def test_jackknife_of_deming_covers_under_constant_error() -> None:
