@@ -244,6 +244,20 @@ def test_a_negative_relation_has_no_passing_bablok_line() -> None:
         fit_line(X, 300 - 1.4 * X, method="passing-bablok", resamples=99, seed=1)
 
 
+def test_results_that_differ_by_rounding_alone_are_equal() -> None:
+    """Means of replicates equal but for their last bits make a vertical pair, and equal points are no pair at all.
+
+    0.1 + 0.2 and 0.3 are one result: the pairs dropped, those below -1 and the line are those of the decimal data.
+    """
+    options = {"method": "passing-bablok", "interval": "jackknife", "resamples": 99, "seed": 1}
+    y = [0.5, 0.31, 0.31, 0.9, 1.2, 1.7]
+    decimal = fit_line([0.3, 0.3, 0.3, 0.8, 1.3, 1.6], y, **options)
+    rounded = fit_line([0.3, 0.1 + 0.2, 0.3, 0.8, 1.3, 1.6], y, **options)
+    assert (rounded.slopes_used, rounded.pairs_below_minus_one) == (14, 2)  # 15 pairs less one; two fall vertically
+    assert (decimal.slopes_used, decimal.pairs_below_minus_one) == (14, 2)
+    assert rounded.slope.estimate == pytest.approx(decimal.slope.estimate, rel=1e-12)
+
+
 def test_differences_are_candidate_minus_comparative() -> None:
     """Mean y - x and limits mean ± 1.96 s; the same in percent of the mean of the two."""
     found = difference(X, Y, interval="bca", resamples=199, seed=1)

@@ -89,6 +89,20 @@ def test_calibrated_tails_are_those_of_the_loop(level: float) -> None:
     assert fit.slope.attained == pytest.approx(slow_attained(fit.slope.estimate, rows, level), abs=1e-12)
 
 
+def test_calibration_counts_second_level_values_at_the_estimate_as_below_it() -> None:
+    """u is the share at or below the estimate: with values on a grid the ties belong to the lower share."""
+    rng = np.random.default_rng(8)
+    values = np.round(rng.normal(1, 0.2, 999), 1)
+    inner = np.round(rng.normal(values[:400, None], 0.2, (400, 199)), 1)
+    sample = Sample(1.0, values, np.arange(10.0), inner)
+    found = tails(sample, interval="calibrated", level=0.95)
+    rows = [list(row) for row in inner]
+    assert found.kind == "calibrated"
+    assert found.low == pytest.approx(slow_calibrated_area(1.0, rows, 0.95), rel=1e-12)
+    assert found.high == pytest.approx(1 - found.low, rel=1e-12)
+    assert found.attained == pytest.approx(slow_attained(1.0, rows, 0.95), abs=1e-12)
+
+
 def test_second_level_values_are_refits_of_resamples_of_resamples() -> None:
     """Drawn from the counts that the core gives, second-level slopes are total least squares on repeated points."""
     rng = np.random.default_rng(9)
