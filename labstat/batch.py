@@ -99,7 +99,8 @@ def _known(only: Sequence[str], read: Round) -> None:
     names = [data.plan.name for data in read.analytes] + list(read.stray)
     for name in only:
         if name not in names:
-            close = difflib.get_close_matches(name, names, n=1)
+            alike = [known for known in names if known.casefold() == name.casefold()]
+            close = alike or difflib.get_close_matches(name, names, n=1)
             meant = f'did you mean "{close[0]}"?' if close else f"which has {', '.join(names)}"
             raise ArgumentError("only", f"must name analytes of the round ({meant})", name)
 

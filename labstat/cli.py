@@ -31,7 +31,21 @@ class _EndedError(KeyboardInterrupt):
     """Asked to end by the system: cleaned up after like an interruption."""
 
 
-@click.group(context_settings={"help_option_names": ["-h", "--help"]})
+class _Commands(click.Group):
+    """The group of commands: an interruption is one line, whatever was running."""
+
+    def invoke(self, ctx: click.Context) -> object:
+        try:
+            return super().invoke(ctx)
+        except _EndedError:
+            tell("ended")
+            return ENDED
+        except KeyboardInterrupt:
+            tell("interrupted")
+            return INTERRUPTED
+
+
+@click.group(cls=_Commands, context_settings={"help_option_names": ["-h", "--help"]})
 @click.version_option(__version__, prog_name="labstat", message="%(prog)s %(version)s")
 def cli() -> None:
     """Validation statistics for a clinical laboratory.
@@ -145,10 +159,6 @@ def _status(arguments: Sequence[str] | None) -> int:
     except LabstatError as error:
         tell(str(error), getattr(error, "hint", ""))
         return UNUSABLE
-    except (click.Abort, KeyboardInterrupt) as error:
-        ended = isinstance(error, _EndedError) or isinstance(error.__cause__, _EndedError)
-        tell("ended" if ended else "interrupted")
-        return ENDED if ended else INTERRUPTED
     except Exception:
         traceback.print_exc()
         tell("this is a fault of labstat, nothing was written", "report it with the lines above")

@@ -16,6 +16,7 @@ from collections.abc import Callable, Iterator, Sequence
 from concurrent.futures import FIRST_COMPLETED, Future, ProcessPoolExecutor, wait
 from concurrent.futures.process import BrokenProcessPool
 from contextlib import contextmanager
+from multiprocessing import resource_tracker
 from typing import TypeVar
 
 from threadpoolctl import threadpool_limits  # type: ignore[import-untyped]
@@ -77,7 +78,7 @@ def _pool(
     executor = ProcessPoolExecutor(min(workers, len(indices)), mp_context=context, initializer=_begin)
     try:
         pending: dict[Future[R], int] = {}
-        with _single_threaded_environment(), _without_main():
+        with _single_threaded_environment(), _without_main(), _undisturbed():
             try:
                 for index in indices:
                     pending[executor.submit(work, jobs[index])] = index
@@ -109,6 +110,8 @@ def _kill(executor: ProcessPoolExecutor) -> None:
 def _begin() -> None:
     """In a worker: one thread, interruptions left to the main process, no life beyond the main process's."""
     signal.signal(signal.SIGINT, signal.SIG_IGN)
+    if hasattr(signal, "pthread_sigmask"):
+        signal.pthread_sigmask(signal.SIG_UNBLOCK, _HELD)
     threadpool_limits(limits=1)
     parent = multiprocessing.parent_process()
     if parent is not None:
@@ -133,6 +136,35 @@ def _single_threaded_environment() -> Iterator[None]:
                 os.environ.pop(name, None)
             else:
                 os.environ[name] = value
+
+
+_HELD = (signal.SIGINT, signal.SIGTERM)
+
+
+@contextmanager
+def _undisturbed() -> Iterator[None]:
+    """Hold interruptions back while workers are started; they arrive afterwards.
+
+    A worker that is interrupted while it starts, or that the main process has not yet taken note of, would write its
+    own tale of woe to the terminal. What is started here inherits that interruptions are held back.
+    """
+    resource_tracker.ensure_running()  # starting it would let interruptions through again
+    came: list[int] = []
+    handlers = {}
+    if threading.current_thread() is threading.main_thread():
+        # the mask below does not reach the threads of libraries, which may take the signal in our place
+        handlers = {number: signal.signal(number, lambda number, _: came.append(number)) for number in _HELD}
+    masks = hasattr(signal, "pthread_sigmask")
+    before = signal.pthread_sigmask(signal.SIG_BLOCK, _HELD) if masks else set()
+    try:
+        yield
+    finally:
+        for held, handler in handlers.items():
+            signal.signal(held, handler)
+        if masks:
+            signal.pthread_sigmask(signal.SIG_SETMASK, before)
+        for number in dict.fromkeys(came):
+            signal.raise_signal(number)
 
 
 @contextmanager
