@@ -66,7 +66,7 @@ def test_start_writes_a_round_that_checks_and_runs(tmp_path):
     assert (done.returncode, done.stdout) == (0, f"new round: {tmp_path / 'new'}\n")
     assert "labstat check" in done.stderr
     assert labstat("check", tmp_path / "new").returncode == 0
-    assert labstat("run", tmp_path / "new", "--resamples", "99").returncode == 0
+    assert labstat("run", tmp_path / "new", "--resamples", "99", "--workers", "1").returncode == 0
     assert (tmp_path / "new" / "out" / "overview.pdf").exists()
 
 
@@ -104,7 +104,7 @@ def test_check_of_an_unusable_round_ends_with_two_and_prints_every_problem(tmp_p
 
 
 def test_run_prints_one_line_an_analyte_and_where_the_reports_are(good, tmp_path):
-    done = labstat("run", good, "--out", tmp_path / "out")
+    done = labstat("run", good, "--out", tmp_path / "out", "--workers", "1")
     assert (done.returncode, done.stderr) == (0, "")
     lines = done.stdout.splitlines()
     assert lines[0].startswith("K   ")
@@ -114,7 +114,7 @@ def test_run_prints_one_line_an_analyte_and_where_the_reports_are(good, tmp_path
 
 
 def test_run_names_what_it_could_not_compute_and_ends_with_one(bad, tmp_path):
-    done = labstat("run", bad, "--out", tmp_path / "out")
+    done = labstat("run", bad, "--out", tmp_path / "out", "--workers", "1")
     assert done.returncode == 1
     assert 'comparison.csv:5: result: "twelve": ' in done.stderr
     assert 'comparison.csv:9: procedure: "Procedure Z": ' in done.stderr
@@ -192,7 +192,7 @@ def test_an_ascii_terminal_ends_nothing(good, tmp_path):
 def test_progress_is_shown_on_a_terminal_only(good, tmp_path):
     mine, theirs = pty.openpty()
     process = subprocess.Popen(
-        command("run", good, "--out", tmp_path / "out"),
+        command("run", good, "--out", tmp_path / "out", "--workers", "1"),
         stdout=subprocess.PIPE,
         stderr=theirs,
         env={**os.environ, "TERM": "xterm", "COLUMNS": "100"},
