@@ -83,4 +83,5 @@ def _term(part: str, text: str) -> Term:
 
 
 def _refused(text: str) -> ArgumentError:
-    return ArgumentError("allowable", 'must be like "8", "10 %", "8 or 10 %", "8 and 10 %" or "-4 to 8", above zero', text)
+    rule = 'must be like "8", "10 %", "8 or 10 %", "8 and 10 %" or "-4 to 8", above zero'
+    return ArgumentError("allowable", rule, text)
