@@ -22,6 +22,7 @@ import numpy.typing as npt
 
 SEED = 20261201
 Array = npt.NDArray[np.float64]
+EXCLUSION = ("exclude", "excluded_by", "excluded_on")
 Truth = Callable[[np.random.Generator, int], Array]
 
 # working days of November 2026, from Monday the 2nd
@@ -69,6 +70,8 @@ class Row:
     day: str
     subject: str
     exclude: str = ""
+    excluded_by: str = ""
+    excluded_on: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -81,6 +84,8 @@ class Person:
     age: int
     result: str
     exclude: str = ""
+    excluded_by: str = ""
+    excluded_on: str = ""
 
 
 def log_normal(median: float, spread: float, low: float, high: float) -> Truth:
@@ -121,14 +126,14 @@ COMPARISONS = (
     Comparison("Glucose", 2001, 80, 1, log_normal(6.8, 0.5, 2.4, 24), procedures=(
         Procedure("Procedure A", sd=0.05, cv=0.015), Procedure("Procedure B", 0.03, 1.0, sd=0.05, cv=0.015),
         Procedure("Procedure C", 0.1, 1.085, sd=0.08, cv=0.025))),
-    # a narrow range in whole numbers
-    Comparison("Sodium", 3001, 50, 0, bell(139, 4.2, 126, 152), procedures=(
+    # a narrow range in whole numbers; three days only
+    Comparison("Sodium", 3001, 50, 0, bell(139, 4.2, 126, 152), days=DAYS[:3], procedures=(
         Procedure("Procedure A", sd=0.8, day_cv=0.001), Procedure("Procedure B", sd=0.8, day_cv=0.001))),
     Comparison("Potassium", 4001, 45, 1, chosen(2.7, 4.7), days=DAYS[:4], procedures=(
         Procedure("Procedure A", sd=0.06), Procedure("Procedure B", 0.02, 1.0, sd=0.06))),
     # reads high at low concentrations and low at high ones
     Comparison("Calcium", 5001, 48, 2, chosen(1.75, 3.05), procedures=(
-        Procedure("Procedure A", sd=0.02, day_cv=0.002), Procedure("Procedure B", 0.30, 0.87, sd=0.02, day_cv=0.002))),
+        Procedure("Procedure A", sd=0.02, day_cv=0.002), Procedure("Procedure B", 0.40, 0.82, sd=0.02, day_cv=0.002))),
     # two decades, the error grows with the concentration; nothing above about 700
     Comparison("ALT", 6001, 120, 0, chosen(8, 700, decades=True), procedures=(
         Procedure("Procedure A", sd=0.7, cv=0.045), Procedure("Procedure B", 0.3, 1.02, sd=0.7, cv=0.045))),
@@ -199,11 +204,11 @@ def drop(rows: list[Row], specimen: int, procedure: str) -> None:
 def trouble(rows: list[Row]) -> None:
     """What goes wrong in real life, put in by hand."""
     drop(rows, 1017, "Procedure B")  # unpaired: too little serum left
-    change(rows, 1042, "Procedure B",
-           exclude="fibrin clot seen in the cup; excluded by the validation lead, 2026-11-09")
+    change(rows, 1042, "Procedure B", exclude="fibrin clot seen in the cup", excluded_by="Validation lead",
+           excluded_on="2026-11-09")
     change(rows, 2033, "Procedure C", result="")  # missing: the order was cancelled
-    change(rows, 4009, "Procedure A",
-           exclude="haemolysed, index 3+; excluded by the duty scientist, 2026-11-03")
+    change(rows, 4009, "Procedure A", exclude="haemolysed, index 3+", excluded_by="Duty scientist",
+           excluded_on="2026-11-03")
     # the only specimen above 4.8 carries the finding at 6.0
     change(rows, 4031, "Procedure A", result="6.4")
     change(rows, 4031, "Procedure B", result="6.4")
@@ -270,8 +275,9 @@ def make(folder: Path) -> None:
             for row in compare(study, rng)]
     trouble(rows)
     write(folder / "comparison.csv",
-          ["analyte", "specimen", "procedure", "replicate", "result", "day", "subject", "exclude"],
-          [[r.analyte, r.specimen, r.procedure, str(r.replicate), r.result, r.day, r.subject, r.exclude] for r in rows])
+          ["analyte", "specimen", "procedure", "replicate", "result", "day", "subject", *EXCLUSION],
+          [[r.analyte, r.specimen, r.procedure, str(r.replicate), r.result, r.day, r.subject, r.exclude, r.excluded_by,
+            r.excluded_on] for r in rows])
 
     wide: dict[str, list[str]] = {}
     for row in compare(UREA, streams(1, 2)[0]):
@@ -282,10 +288,12 @@ def make(folder: Path) -> None:
     for group, rng in zip(GROUPS, streams(len(GROUPS), 3), strict=True):
         people += recruit(group, 101 + len(people), rng)
     # asked for and documented before the measurement, found out after it
-    people[5] = replace(people[5], exclude="takes creatine; excluded by the validation lead, 2026-11-12")
+    people[5] = replace(people[5], exclude="takes creatine", excluded_by="Validation lead",
+                        excluded_on="2026-11-12")
     people[140] = replace(people[140], result="")
-    write(folder / "reference.csv", ["analyte", "subject", "sex", "age", "result", "exclude"],
-          [[p.analyte, p.subject, p.sex, str(p.age), p.result, p.exclude] for p in people])
+    write(folder / "reference.csv", ["analyte", "subject", "sex", "age", "result", *EXCLUSION],
+          [[p.analyte, p.subject, p.sex, str(p.age), p.result, p.exclude, p.excluded_by, p.excluded_on]
+           for p in people])
 
 
 if __name__ == "__main__":
