@@ -13,12 +13,12 @@ from scipy import stats
 from labstat.comparison.moments import Moments
 from labstat.comparison.pairs import checked_pairs, checked_share, cluster_members
 from labstat.comparison.results import Array, Difference
+from labstat.comparison.scalars import checked_resamples, checked_seed
 from labstat.errors import ArgumentError, NotComputableError
 from labstat.resample.counts import Counts
 from labstat.resample.engine import Statistic, bootstrap, by_cluster
 from labstat.resample.estimate import Estimate
 from labstat.resample.intervals import KINDS, estimate_from
-from labstat.resample.seeds import fresh_seed
 
 INNER = 499
 SHARE = 0.95
@@ -66,6 +66,8 @@ def difference(
     if interval not in (*KINDS, "normal"):
         raise ArgumentError("interval", f"must be one of {', '.join((*KINDS, 'normal'))}", interval)
     checked_share("level", level)
+    checked_resamples(resamples)
+    used_seed = checked_seed(seed)
     order = np.lexsort((second, first))
     first, second = first[order], second[order]
     d = differences(first, second, scale=scale)
@@ -78,9 +80,11 @@ def difference(
     if clusters is not None:
         members = cluster_members(clusters, order)
         statistic, units = by_cluster(statistic, members), int(members.max()) + 1
-    used_seed = fresh_seed() if seed is None else int(seed)
     inner = INNER if interval in ("calibrated", "percentile") else 0
-    draws = bootstrap(statistic, units, resamples=resamples, seed=used_seed, inner=inner)
+    size = float(max(np.max(np.abs(first)), np.max(np.abs(second)))) if scale == "absolute" else 100.0
+    draws = bootstrap(
+        statistic, units, resamples=int(resamples), seed=used_seed, inner=inner, resolution=1e-12 * size
+    )
     mean, lower, upper = (estimate_from(draws.parameter(i), interval=interval, level=level) for i in range(3))
     return Difference(scale, d.size, mean, sd, lower, upper, normal)
 

@@ -12,13 +12,13 @@ from labstat.comparison.moments import deming, ordinary
 from labstat.comparison.pairs import checked_pairs, checked_share, checked_values, cluster_members
 from labstat.comparison.passing_bablok import RankInterval, pair_slopes, passing_bablok, rank_interval
 from labstat.comparison.results import Array, Band, Bias
+from labstat.comparison.scalars import checked_number, checked_resamples, checked_seed
 from labstat.comparison.weighted_deming import weighted_deming
 from labstat.errors import ArgumentError, NotComputableError
 from labstat.resample.engine import Draws, Sample, Statistic, bootstrap, by_cluster
 from labstat.resample.estimate import Estimate
 from labstat.resample.intervals import KINDS, estimate_from
 from labstat.resample.ranks import at_tail
-from labstat.resample.seeds import fresh_seed
 
 INNER = {"ordinary": 499, "deming": 499, "weighted-deming": 199, "passing-bablok": 199}
 """Methods, and how many second-level resamples calibrate each (the dearer ones get fewer)."""
@@ -102,11 +102,10 @@ def fit_line(
         raise ArgumentError("method", f"must be one of {', '.join(METHODS)}", method)
     _check_interval(interval, method)
     checked_share("level", level)
-    if not np.isfinite(variance_ratio) or variance_ratio <= 0.0:
+    if checked_number("variance_ratio", variance_ratio) <= 0.0:
         raise ArgumentError("variance_ratio", "must be a number above zero", variance_ratio)
-    if isinstance(resamples, bool) or not isinstance(resamples, (int, np.integer)) or resamples < 99:
-        raise ArgumentError("resamples", "must be a whole number of at least 99", resamples)
-    used_seed = fresh_seed() if seed is None else int(seed)
+    checked_resamples(resamples)
+    used_seed = checked_seed(seed)
     # sorted, so that the order of the rows changes nothing, not even the last bit
     order = np.lexsort((second, first))
     first, second = first[order], second[order]
@@ -119,7 +118,10 @@ def fit_line(
     if clusters is not None:
         members = cluster_members(clusters, order)
         statistic, units = by_cluster(statistic, members), int(members.max()) + 1
-    draws = bootstrap(statistic, units, resamples=int(resamples), seed=used_seed, inner=inner)
+    draws = bootstrap(
+        statistic, units, resamples=int(resamples), seed=used_seed, inner=inner,
+        resolution=_resolution(first, second, estimate),
+    )
     kind = _bootstrap_kind(interval)
     made = [
         _with_rank(estimate_from(draws.parameter(i), interval=kind, level=level), ranks, i, interval) for i in (0, 1)
@@ -186,6 +188,12 @@ def _check_interval(interval: str, method: str) -> None:
 
 def _bootstrap_kind(interval: str) -> str:
     return "calibrated" if interval == RANK else interval
+
+
+def _resolution(x: Array, y: Array, estimate: Array) -> Array:
+    """Differences of slope and intercept that are rounding: far below the decimal data, far above the last bit."""
+    slope = abs(float(estimate[0]))
+    return np.array([1e-10 * slope, 1e-11 * (float(np.max(np.abs(y))) + slope * float(np.max(np.abs(x))))])
 
 
 def _statistic(

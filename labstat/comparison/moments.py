@@ -45,7 +45,7 @@ class Moments:
         # below rounding there is no spread: such a resample holds one point only
         tiny = 1e-14 * total
         u, q = np.where(u <= tiny, 0.0, u), np.where(q <= tiny, 0.0, q)
-        p = np.where((u == 0.0) | (q == 0.0), 0.0, p)
+        p = np.where((u == 0.0) | (q == 0.0) | (np.abs(p) <= tiny), 0.0, p)
         return (
             self.centre_x + self.scale_x * mx,
             self.centre_y + self.scale_y * my,

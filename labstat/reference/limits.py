@@ -48,8 +48,9 @@ def reference_limits(
 
     ``probabilities``: one or two; a single one gives ``upper`` for 0.5 and above, ``lower`` below. ``method``:
     ``"rank"`` (nonparametric; Solberg 1987, CLSI EP28), ``"robust"`` (Horn, Pesce & Copeland 1998) or ``"auto"`` (rank
-    from n = 120, robust below). ``interval``: ``"percentile"`` or ``"bca"`` (exact bootstrap for ranks: no Monte Carlo), or
-    ``"rank"`` (Reed, Henry & Mason 1971). ``seed`` serves the robust method; ``None`` draws a fresh one and records it.
+    from n = 120, robust below). ``interval``: ``"percentile"`` or ``"bca"`` (exact bootstrap for ranks: no Monte
+    Carlo), or ``"rank"`` (Reed, Henry & Mason 1971). ``seed`` serves the robust method; ``None`` draws a fresh one and
+    records it.
 
     Raises :class:`ArgumentError` for bad input and :class:`NotComputableError` below ``minimum_n`` values or where the
     robust method does not exist. When not to use it: several populations in one sample (partition first), results of

@@ -81,23 +81,32 @@ def bootstrap(
     resamples: int,
     seed: int,
     inner: int = 0,
+    resolution: npt.ArrayLike = 0.0,
     block: int | None = None,
 ) -> Draws:
     """Estimate, bootstrap and jackknife values of a statistic of counts.
 
     ``inner`` second-level resamples are drawn for each of the first :data:`OUTER` first-level ones (0: none).
-    ``block`` bounds the rows handed to the statistic at once; it changes nothing but memory and speed.
+    Values within ``resolution`` of the estimate (one number a parameter) are set equal to it: a tie is a fact of the
+    decimal data, which rounding must neither make nor break. ``block`` bounds the rows handed to the statistic at
+    once; it changes nothing but memory and speed.
     When it is wrong: dependent units (resample clusters instead, see :func:`by_cluster`), extreme quantiles of few
     units, units that are not exchangeable.
     """
     rows = max(1, _CELLS // units) if block is None else block
     estimate = statistic(np.ones((1, units), dtype=counts_dtype(units)))[0]
-    values = np.concatenate([statistic(c) for c in first_level(units, resamples, seed=seed, block=rows)])
+    near = np.broadcast_to(np.asarray(resolution, dtype=np.float64), estimate.shape)
+
+    def tied(counts: Counts) -> Array:
+        found = statistic(counts)
+        return np.where(np.abs(found - estimate) <= near, estimate, found)
+
+    values = np.concatenate([tied(c) for c in first_level(units, resamples, seed=seed, block=rows)])
     left_out = leave_one_out(units)
-    jackknife = np.concatenate([statistic(left_out[i : i + rows]) for i in range(0, units, rows)])
+    jackknife = np.concatenate([tied(left_out[i : i + rows]) for i in range(0, units, rows)])
     second = None
     if inner:
-        second = _second(statistic, units, min(OUTER, resamples), inner, seed, rows)
+        second = _second(tied, units, min(OUTER, resamples), inner, seed, rows)
     return Draws(estimate, values, jackknife, second, units, seed)
 
 
