@@ -6,10 +6,16 @@ import json
 import re
 from pathlib import Path
 
+import pytest
+from pydantic import BaseModel
+from pydantic_core import PydanticUndefined
+
 from labstat.judgement.rules_analyte import ANALYTE_RULES
 from labstat.judgement.rules_comparison import COMPARISON_RULES
 from labstat.judgement.rules_level import LEVEL_RULES
 from labstat.judgement.rules_reference import GROUP_RULES
+from labstat.round import plan_tables, schema
+from labstat.round import rows as tables
 
 DOCS = Path(__file__).resolve().parents[1] / "docs"
 
@@ -93,3 +99,65 @@ def test_the_page_of_results_lists_every_key_that_the_sample_rounds_have_and_no_
     assert paths - found - rare == set()
     assert found_estimate <= estimate
     assert estimate - found_estimate <= {"replaced", "reason", "rank_attained"}
+
+
+PLAN_SECTIONS: dict[str, type[BaseModel]] = {
+    "`[round]`": schema.RoundKeys,
+    "`approved`": schema.ApprovalKeys,
+    "`[files]`": schema.FilesKeys,
+    "A file": schema.FileKeys,
+    "`[defaults]`": schema.DefaultsKeys,
+    "`[[analyte]]`": schema.AnalyteKeys,
+    "`[analyte.comparison]`": schema.ComparisonKeys,
+    "`levels`": schema.LevelKeys,
+    "`[analyte.reference]`": schema.ReferenceKeys,
+    "`[[analyte.elsewhere]]`": schema.ElsewhereKeys,
+}
+
+
+def plan_page() -> dict[str, list[list[str]]]:
+    """Table rows of the page of the plan, by the heading above them."""
+    text = (DOCS / "plan.md").read_text(encoding="utf-8")
+    found: dict[str, list[list[str]]] = {}
+    for part in re.split(r"^#+ ", text, flags=re.MULTILINE):
+        title, _, body = part.partition("\n")
+        found[title] = [
+            [cell.strip() for cell in line[1:].rstrip("|").split(" | ")]
+            for line in body.splitlines() if line.startswith("| `")
+        ]
+    return found
+
+
+def written(model: type[BaseModel], name: str) -> str:
+    """A default as the page writes it."""
+    default = model.model_fields[name].default
+    if default is PydanticUndefined:
+        return "required"
+    return "none" if default is None else f"`{json.dumps(default)}`"
+
+
+@pytest.mark.parametrize("title", PLAN_SECTIONS)
+def test_the_page_of_the_plan_lists_every_key_with_its_default_and_no_other(title: str) -> None:
+    model = PLAN_SECTIONS[title]
+    listed = [(cells[0].strip("`"), cells[2]) for cells in plan_page()[title]]
+    assert listed == [(name, written(model, name)) for name in model.model_fields]
+
+
+def test_the_page_of_the_plan_has_a_section_for_every_model_of_the_plan() -> None:
+    models = {
+        model for model in vars(schema).values()
+        if isinstance(model, type) and issubclass(model, schema.Strict)
+    }
+    assert models - {schema.Strict, schema.PlanKeys} == set(PLAN_SECTIONS.values())
+
+
+def test_the_page_of_the_plan_lists_every_column_of_every_table() -> None:
+    kinds = {
+        "comparison": tables.COMPARISON, "reference": tables.REFERENCE, "precision": tables.PRECISION,
+        "allowances": plan_tables.ALLOWANCES, "analytes": plan_tables.ANALYTES,
+    }
+    listed = {
+        cells[0].strip("`"): tuple(tuple(re.findall(r"`(\w+)`", cell)) for cell in cells[1:])
+        for cells in plan_page()["The tables"]
+    }
+    assert listed == {name: (columns.required, columns.optional) for name, columns in kinds.items()}
