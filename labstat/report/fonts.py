@@ -1,0 +1,62 @@
+"""The embedded fonts, and user text made safe for them."""
+
+from __future__ import annotations
+
+from importlib.resources import files
+from typing import Final
+from xml.sax.saxutils import escape
+
+from reportlab.pdfbase import pdfmetrics
+from reportlab.pdfbase.ttfonts import TTFont
+
+TEXT: Final = "Text"
+BOLD: Final = "Text-Bold"
+
+_BIDI = {0x200E, 0x200F, 0x061C, *range(0x202A, 0x202F), *range(0x2066, 0x206A)}
+REPLACEMENT = "\ufffd"
+
+
+def register() -> None:
+    """Make the fonts known to the drawing library; calling it again does nothing."""
+    known = pdfmetrics.getRegisteredFontNames()
+    for name in (TEXT, BOLD):
+        if name not in known:
+            path = files("labstat.report").joinpath("fonts", f"{name}.ttf")
+            pdfmetrics.registerFont(TTFont(name, str(path), asciiReadable=False))
+    if TEXT not in known:
+        pdfmetrics.registerFontFamily(TEXT, normal=TEXT, bold=BOLD, italic=TEXT, boldItalic=BOLD)
+
+
+def clean(text: str) -> str:
+    """Text without control characters, direction overrides and lone surrogates: each becomes U+FFFD."""
+    return "".join(
+        " " if sign in "\n\r\t" else REPLACEMENT if _harmful(ord(sign)) else sign for sign in text
+    )
+
+
+def _harmful(code: int) -> bool:
+    return code < 0x20 or 0x7F <= code < 0xA0 or 0xD800 <= code < 0xE000 or code in _BIDI
+
+
+def missing(text: str) -> str:
+    """The characters of ``text`` that the fonts cannot draw, each once; empty when there are none."""
+    register()
+    glyphs = pdfmetrics.getFont(TEXT).face.charToGlyph
+    return "".join(dict.fromkeys(sign for sign in clean(text) if ord(sign) not in glyphs))
+
+
+def shown(text: str, *, most: int = 400) -> str:
+    """Text as it can be drawn: characters without a glyph become U+FFFD, endless text is cut with an ellipsis."""
+    lost = set(missing(text))
+    words = "".join(REPLACEMENT if sign in lost else sign for sign in clean(text))
+    return words if len(words) <= most else words[: most - 1] + "…"
+
+
+def markup(text: str, *, most: int = 400) -> str:
+    """Text for a paragraph: drawable, and nothing in it is taken for markup."""
+    return escape(shown(text, most=most))
+
+
+def width(text: str, size: float, *, font: str = TEXT) -> float:
+    """Width of drawn text in points."""
+    return float(pdfmetrics.stringWidth(text, font, size))

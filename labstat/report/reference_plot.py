@@ -1,0 +1,88 @@
+"""Reference values of each group: their distribution, the limits with intervals, and the interval in use."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+from reportlab.graphics.shapes import Drawing, Line, Rect
+
+from labstat.report.axes import ACCENT, FAINT, INK, SHADE, SOFT, Axes, Scale, linear_scale
+from labstat.report.fonts import register, shown
+from labstat.report.plot_parts import KeyEntry, key, with_unit
+from labstat.round.model import AnalytePlan
+from labstat.study_results import GroupResult
+
+MOST = 4
+"""Groups drawn in one figure; more are named in the caption and stand in the table."""
+
+
+def group_words(group: GroupResult) -> str:
+    """A group in words."""
+    return ", ".join(f"{column} {value}" for column, value in group.partition.items()) or "all"
+
+
+def reference_plot(groups: Sequence[GroupResult], analyte: AnalytePlan, *, width: float, height: float) -> Drawing:
+    """Histograms one above the other on one scale, with limits and their intervals drawn through."""
+    register()
+    drawing = Drawing(width, height)
+    chosen = [group for group in groups if np.isfinite(group.values).any()][:MOST]
+    if not chosen:
+        return drawing
+    values: list[float] = []
+    for group in chosen:
+        finite = group.values[np.isfinite(group.values)]
+        values += [float(finite.min()), float(finite.max())]
+        for limit in (group.limits.lower, group.limits.upper):
+            values += [v for v in (limit.low, limit.high) if v is not None] if limit is not None else []
+        if group.adopted is not None:
+            values += [v for v in (group.adopted.low, group.adopted.high) if v is not None]
+    scale = linear_scale(values, room=0.03)
+    bottom, top = 42.0, height - 6
+    each = (top - bottom) / len(chosen)
+    edges = np.linspace(scale.low, scale.high, 41)
+    for index, group in enumerate(chosen):
+        base = top - (index + 1) * each
+        _group(drawing, group, scale, edges, left=40, right=width - 6, bottom=base, top=base + each, last=False)
+    foot = Axes(drawing, left=40, bottom=bottom, right=width - 6, top=top, x=scale, y=Scale(0, 1))
+    _foot(foot, analyte)
+    entries: list[KeyEntry] = [
+        ("limit", INK, 1.6, None), ("its interval", SHADE, 6.0, None),
+    ]
+    if any(group.adopted is not None for group in chosen):
+        entries.append(("interval in use", SOFT, 1.2, (3, 2)))
+    key(drawing, entries, left=40, bottom=8, right=width)
+    return drawing
+
+
+def _foot(axes: Axes, analyte: AnalytePlan) -> None:
+    axes.frame(x_title=with_unit(analyte.name, analyte.unit), y_title="", y_ticks=0, grid=False)
+
+
+def _group(
+    drawing: Drawing, group: GroupResult, scale: Scale, edges: np.ndarray, *, left: float, right: float,
+    bottom: float, top: float, last: bool,
+) -> None:
+    finite = group.values[np.isfinite(group.values)]
+    counts, _ = np.histogram(finite, bins=edges)
+    axes = Axes(
+        drawing, left=left, bottom=bottom, right=right, top=top, x=scale, y=Scale(0.0, max(1, counts.max()) * 1.45)
+    )
+    drawing.add(Line(left, bottom, right, bottom, strokeColor=INK, strokeWidth=0.5))
+    for limit in (group.limits.lower, group.limits.upper):
+        if limit is not None and limit.low is not None and limit.high is not None:
+            axes.rectangle(limit.low, 0.0, limit.high, axes.ys.high, fill=SHADE)
+    for count, a, b in zip(counts, edges, edges[1:], strict=False):
+        if count:
+            (x1, y1), (x2, y2) = axes.at(float(a), 0.0), axes.at(float(b), float(count))
+            drawing.add(
+                Rect(x1 + 0.4, y1, x2 - x1 - 0.8, y2 - y1, fillColor=FAINT, strokeColor=ACCENT, strokeWidth=0.5)
+            )
+    for limit in (group.limits.lower, group.limits.upper):
+        if limit is not None:
+            axes.segment(limit.estimate, 0.0, limit.estimate, axes.ys.high, colour=INK, wide=1.6)
+    if group.adopted is not None:
+        for edge in (group.adopted.low, group.adopted.high):
+            if edge is not None:
+                axes.segment(edge, 0.0, edge, axes.ys.high, colour=SOFT, wide=1.2, dash=(3, 2))
+    axes.text(left + 4, top - 9, f"{shown(group_words(group), most=50)}, n = {group.limits.n}")

@@ -1,0 +1,75 @@
+"""Candidate against comparative: specimens, line, band, identity and allowances."""
+
+from __future__ import annotations
+
+import numpy as np
+from reportlab.graphics.shapes import Drawing
+
+from labstat.report.axes import ACCENT, INK, SHADE, SOFT, Axes, linear_scale, log_scale
+from labstat.report.fonts import register, shown
+from labstat.report.plot_parts import KeyEntry, key, level_marks, wide_range, with_unit
+from labstat.round.model import AnalytePlan
+from labstat.study_results import ComparisonResult
+
+POINTS = 80
+
+
+def scatter(result: ComparisonResult, analyte: AnalytePlan, *, width: float, height: float) -> Drawing:
+    """The scatter of one candidate; both axes have one scale, logarithmic where the specimens span decades."""
+    register()
+    drawing = Drawing(width, height)
+    data = result.data
+    log = wide_range(result)
+    both = [*map(float, data.x), *map(float, data.y)]
+    scale = log_scale(both) if log else linear_scale(both)
+    side = min(width - 52, height - 62)
+    axes = Axes(drawing, left=44, bottom=46, right=44 + side, top=46 + side, x=scale, y=scale)
+    grid = np.geomspace(scale.low, scale.high, POINTS) if log else np.linspace(scale.low, scale.high, POINTS)
+    if result.band is not None:
+        band = result.band
+        axes.area(list(map(float, band.x)), list(map(float, band.low)), list(map(float, band.high)), colour=SHADE)
+    axes.frame(
+        x_title=with_unit(f"{data.comparative}, comparative", analyte.unit),
+        y_title=with_unit(f"{data.candidate}, candidate", analyte.unit),
+    )
+    _allowed(axes, result)
+    level_marks(axes, [level.level.at for level in result.levels])
+    axes.segment(scale.low, scale.low, scale.high, scale.high, colour=SOFT, wide=0.8, dash=(4, 2.5))
+    fit = result.reported
+    line = [fit.intercept.estimate + fit.slope.estimate * float(x) for x in grid]
+    axes.curve(list(map(float, grid)), line, colour=ACCENT, wide=1.3)
+    flagged = {outlier.specimen for outlier in result.outliers}
+    for specimen, x, y in zip(data.specimens, data.x, data.y, strict=True):
+        axes.dot(float(x), float(y), flagged=specimen in flagged)
+    _names(axes, result)
+    entries: list[KeyEntry] = [
+        ("line", ACCENT, 1.3, None), ("its band", SHADE, 5.0, None), ("no difference", SOFT, 0.8, (4, 2.5)),
+    ]
+    if any(level.level.allowable for level in result.levels):
+        entries.append(("allowed at the level", INK, 1.6, None))
+    key(drawing, entries, left=44, bottom=12, right=width)
+    return drawing
+
+
+def _allowed(axes: Axes, result: ComparisonResult) -> None:
+    """What is allowed around identity, drawn at each level as an upright bar with caps."""
+    for item in result.levels:
+        allowance, at = item.level.allowable, item.level.at
+        if allowance is None:
+            continue
+        low, high = allowance.at(at)
+        axes.segment(at, at + low, at, at + high, colour=INK, wide=1.6)
+        x = axes.at(at, at)[0]
+        for edge in (at + low, at + high):
+            y = axes.at(at, edge)[1]
+            if axes.bottom <= y <= axes.top and axes.left <= x <= axes.right:
+                axes.rule(x - 4, y, x + 4, y, INK, 1.0)
+
+
+def _names(axes: Axes, result: ComparisonResult) -> None:
+    """Names of flagged specimens beside their marks, at most four, turned inwards at the right edge."""
+    for outlier in result.outliers[:4]:
+        x, y = axes.at(outlier.x, outlier.y)
+        inward = x > (axes.left + axes.right) / 2
+        axes.text(x - 5 if inward else x + 5, y + 4, shown(outlier.specimen, most=14),
+                  anchor="end" if inward else "start", size=6)
