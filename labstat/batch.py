@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import difflib
 import os
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
@@ -27,6 +26,7 @@ Progress = Callable[[str, int, int], None]
 LARGEST_SEED = 2**63 - 1
 FEWEST_RESAMPLES = 99
 """Fewer cannot hold the tails of any interval."""
+MOST_RESAMPLES = 1_000_000
 
 
 @dataclass(frozen=True, slots=True)
@@ -67,21 +67,19 @@ def run_round(
     """
     _check("workers", workers, least=1)
     _check("seed", seed, least=0, most=LARGEST_SEED)
-    _check("resamples", resamples, least=FEWEST_RESAMPLES)
+    _check("resamples", resamples, least=FEWEST_RESAMPLES, most=MOST_RESAMPLES)
     if isinstance(only, str):
         raise ArgumentError("only", "must be a list of analyte names", only)
-    read = read_round(folder)
-    _known(only, read)
+    read = read_round(Path(folder), only=only)
     context = _context(read, seed=seed, resamples=resamples, only=only)
     target = Path(folder) / "out" if out is None else Path(out)
     with reserved(target, folder=Path(folder)) as output:
-        outcomes = _outcomes(read, context, only=only, workers=workers, progress=progress)
+        outcomes = _outcomes(read, context, workers=workers, progress=progress)
         output.publish(_files(outcomes, context, only))
         path = str(output.path)
     entries = tuple(outcome.entry for outcome in outcomes)
-    named = {entry.name for entry in entries}
-    problems = [p for data in read.analytes if data.plan.name in named for p in data.problems]
-    problems += [p for name in sorted(read.stray) if name in named for p in read.stray[name]]
+    problems = [problem for data in read.analytes for problem in data.problems]
+    problems += [problem for name in sorted(read.stray) for problem in read.stray[name]]
     status = 1 if any(not outcome.complete for outcome in outcomes) else 0
     return RunReport(status, entries, path, tuple(problems))
 
@@ -93,16 +91,6 @@ def _check(argument: str, value: int | None, *, least: int, most: int | None = N
     if not whole or value < least or (most is not None and value > most):
         upper = "" if most is None else f" and at most {most}"
         raise ArgumentError(argument, f"must be a whole number of at least {least}{upper}", value)
-
-
-def _known(only: Sequence[str], read: Round) -> None:
-    names = [data.plan.name for data in read.analytes] + list(read.stray)
-    for name in only:
-        if name not in names:
-            alike = [known for known in names if known.casefold() == name.casefold()]
-            close = alike or difflib.get_close_matches(name, names, n=1)
-            meant = f'did you mean "{close[0]}"?' if close else f"which has {', '.join(names)}"
-            raise ArgumentError("only", f"must name analytes of the round ({meant})", name)
 
 
 def _context(read: Round, *, seed: int | None, resamples: int | None, only: Sequence[str]) -> RunContext:
@@ -119,14 +107,10 @@ def _context(read: Round, *, seed: int | None, resamples: int | None, only: Sequ
 
 
 def _outcomes(
-    read: Round, context: RunContext, *, only: Sequence[str], workers: int | None, progress: Progress | None
+    read: Round, context: RunContext, *, workers: int | None, progress: Progress | None
 ) -> list[Outcome]:
-    names = report_names([data.plan.name for data in read.analytes])
-    jobs = [
-        Job(data, context, f"reports/{names[data.plan.name]}")
-        for data in read.analytes
-        if not only or data.plan.name in only
-    ]
+    names = report_names([plan.name for plan in read.plan.analytes])
+    jobs = [Job(data, context, f"reports/{names[data.plan.name]}") for data in read.analytes]
     ended = 0
 
     def done(job: Job) -> None:
@@ -139,9 +123,7 @@ def _outcomes(
         work, jobs, workers=_workers(workers, len(jobs)), failed=failed_outcome, done=done,
         preload=["labstat.analyte_job"],
     )
-    return outcomes + [
-        stray_outcome(name, read.stray[name]) for name in sorted(read.stray) if not only or name in only
-    ]
+    return outcomes + [stray_outcome(name, read.stray[name]) for name in sorted(read.stray)]
 
 
 def _workers(asked: int | None, jobs: int) -> int:

@@ -96,8 +96,8 @@ def check(folder: Path) -> int:
 @click.option("--out", type=click.Path(path_type=Path), metavar="DIR", help="Where to write  [default: ROUND/out]")
 @click.option("--only", multiple=True, metavar="ANALYTE", help="Compute this analyte only; may be repeated")
 @click.option("--workers", type=click.IntRange(min=1), metavar="N", help="Processes  [default: all processors]")
-@click.option("--seed", type=click.IntRange(min=0, max=2**63 - 1), metavar="S", help="Stands in for the plan's seed")
-@click.option("--resamples", type=click.IntRange(min=99), metavar="B", help="Stands in for the plan's resamples")
+@click.option("--seed", type=click.IntRange(0, 2**63 - 1), metavar="S", help="In place of the plan's")
+@click.option("--resamples", type=click.IntRange(99, 1_000_000), metavar="B", help="In place of the plan's")
 def run(
     folder: Path, out: Path | None, only: tuple[str, ...], workers: int | None, seed: int | None, resamples: int | None
 ) -> int:
