@@ -8,9 +8,9 @@ from pathlib import Path
 
 import click
 import pytest
-from labstat.cli import cli
 
 import labstat
+from labstat.cli import cli
 
 ROOT = Path(__file__).resolve().parents[1]
 README = (ROOT / "README.md").read_text(encoding="utf-8")
