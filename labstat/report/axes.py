@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import Literal
 
 from reportlab.graphics.shapes import Circle, Drawing, Line, Polygon, PolyLine, Rect, String
 from reportlab.lib.colors import Color, white
@@ -20,6 +21,8 @@ ACCENT = Color(0.06, 0.29, 0.51)
 ALARM = Color(0.62, 0.16, 0.10)
 SIZE = 7.0
 
+Anchor = Literal["start", "middle", "end"]
+
 
 def put_line(
     drawing: Drawing, x1: float, y1: float, x2: float, y2: float, colour: Color, wide: float,
@@ -33,8 +36,18 @@ def put_line(
     drawing.add(line)
 
 
+def put_rect(
+    drawing: Drawing, x: float, y: float, wide: float, high: float, *, fill: Color | None, stroke: Color | None = None,
+    line: float = 0.5,
+) -> None:
+    """A rectangle on a drawing."""
+    box = Rect(x, y, wide, high)
+    box.fillColor, box.strokeColor, box.strokeWidth = fill, stroke, line if stroke is not None else 0
+    drawing.add(box)
+
+
 def put_text(
-    drawing: Drawing, x: float, y: float, text: str, *, anchor: str = "start", size: float = SIZE,
+    drawing: Drawing, x: float, y: float, text: str, *, anchor: Anchor = "start", size: float = SIZE,
     colour: Color = INK, font: str = TEXT,
 ) -> None:
     """Text on a drawing."""
@@ -116,14 +129,15 @@ class Axes:
                     if py > end + 7:
                         self.text(self.left - 4, py - 2.4, label, anchor="end")
                         end = py
-        box = Rect(self.left, self.bottom, self.right - self.left, self.top - self.bottom)
-        box.fillColor, box.strokeColor, box.strokeWidth = None, INK, 0.6
-        self.drawing.add(box)
+        put_rect(
+            self.drawing, self.left, self.bottom, self.right - self.left, self.top - self.bottom, fill=None,
+            stroke=INK, line=0.6,
+        )
         self.text((self.left + self.right) / 2, self.bottom - 21, x_title, anchor="middle")
         self.text(self.left, self.top + 5, y_title)
 
     def text(
-        self, x: float, y: float, text: str, *, anchor: str = "start", size: float = SIZE, colour: Color = INK,
+        self, x: float, y: float, text: str, *, anchor: Anchor = "start", size: float = SIZE, colour: Color = INK,
         font: str = TEXT,
     ) -> None:
         """Text at a place of the page (not of the data)."""
@@ -185,7 +199,7 @@ class Axes:
         (a, b), (c, d) = self.at(x1, y1), self.at(x2, y2)
         a, c = sorted(min(max(v, self.left), self.right) for v in (a, c))
         b, d = sorted(min(max(v, self.bottom), self.top) for v in (b, d))
-        self.drawing.add(Rect(a, b, c - a, d - b, fillColor=fill, strokeColor=stroke, strokeWidth=0.5))
+        put_rect(self.drawing, a, b, c - a, d - b, fill=fill, stroke=stroke)
 
     def dot(self, x: float, y: float, *, size: float = 1.7, flagged: bool = False) -> None:
         """A measured point; a flagged one is a hollow square with a cross, seen without colour."""
@@ -194,7 +208,7 @@ class Axes:
             return
         if flagged:
             s = size + 1.2
-            self.drawing.add(Rect(px - s, py - s, 2 * s, 2 * s, fillColor=white, strokeColor=ALARM, strokeWidth=0.8))
+            put_rect(self.drawing, px - s, py - s, 2 * s, 2 * s, fill=white, stroke=ALARM, line=0.8)
             self.rule(px - s, py - s, px + s, py + s, ALARM, 0.8)
         else:
             self.drawing.add(Circle(px, py, size, fillColor=white, strokeColor=ACCENT, strokeWidth=0.7))

@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
-from reportlab.graphics.shapes import Circle, Drawing, Rect
+from reportlab.graphics.shapes import Circle, Drawing
 from reportlab.lib.colors import white
 
 from labstat.comparison.results import Bias
-from labstat.report.axes import ACCENT, FAINT, INK, SOFT, Axes, Scale, linear_scale
+from labstat.report.axes import ACCENT, FAINT, INK, SOFT, Axes, Scale, linear_scale, put_rect
 from labstat.report.fonts import register
 from labstat.report.numbers import plain
 from labstat.report.plot_parts import KeyEntry, key, with_unit
@@ -67,9 +67,9 @@ def _frame(axes: Axes, result: ComparisonResult, analyte: AnalytePlan, *, percen
         axes.text(axes.left - 4, y - 2.4, plain(round(tick, 9)).replace("-", "−"), anchor="end")
     zero = axes.at(0.0, 0.0)[1]
     axes.rule(axes.left, zero, axes.right, zero, SOFT, 0.8, (4, 2.5))
-    axes.drawing.add(
-        Rect(axes.left, axes.bottom, axes.right - axes.left, axes.top - axes.bottom, fillColor=None, strokeColor=INK,
-             strokeWidth=0.6)
+    put_rect(
+        axes.drawing, axes.left, axes.bottom, axes.right - axes.left, axes.top - axes.bottom, fill=None, stroke=INK,
+        line=0.6,
     )
     step = max(1, -(-len(result.levels) * 34 // int(axes.right - axes.left)))
     for index, item in enumerate(result.levels):

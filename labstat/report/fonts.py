@@ -41,7 +41,10 @@ def _harmful(code: int) -> bool:
 def missing(text: str) -> str:
     """The characters of ``text`` that the fonts cannot draw, each once; empty when there are none."""
     register()
-    glyphs = pdfmetrics.getFont(TEXT).face.charToGlyph
+    font = pdfmetrics.getFont(TEXT)
+    if not isinstance(font, TTFont):
+        raise TypeError("the text font is not the embedded one")
+    glyphs = font.face.charToGlyph
     return "".join(dict.fromkeys(sign for sign in clean(text) if ord(sign) not in glyphs))
 
 

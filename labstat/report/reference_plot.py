@@ -5,9 +5,10 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 import numpy as np
-from reportlab.graphics.shapes import Drawing, Line, Rect
+import numpy.typing as npt
+from reportlab.graphics.shapes import Drawing, Line
 
-from labstat.report.axes import ACCENT, FAINT, INK, SHADE, SOFT, Axes, Scale, linear_scale
+from labstat.report.axes import ACCENT, FAINT, INK, SHADE, SOFT, Axes, Scale, linear_scale, put_rect
 from labstat.report.fonts import register, shown
 from labstat.report.plot_parts import KeyEntry, key, with_unit
 from labstat.round.model import AnalytePlan
@@ -43,7 +44,7 @@ def reference_plot(groups: Sequence[GroupResult], analyte: AnalytePlan, *, width
     edges = np.linspace(scale.low, scale.high, 41)
     for index, group in enumerate(chosen):
         base = top - (index + 1) * each
-        _group(drawing, group, scale, edges, left=40, right=width - 6, bottom=base, top=base + each, last=False)
+        _group(drawing, group, scale, edges, left=40, right=width - 6, bottom=base, top=base + each)
     foot = Axes(drawing, left=40, bottom=bottom, right=width - 6, top=top, x=scale, y=Scale(0, 1))
     _foot(foot, analyte)
     entries: list[KeyEntry] = [
@@ -60,8 +61,8 @@ def _foot(axes: Axes, analyte: AnalytePlan) -> None:
 
 
 def _group(
-    drawing: Drawing, group: GroupResult, scale: Scale, edges: np.ndarray, *, left: float, right: float,
-    bottom: float, top: float, last: bool,
+    drawing: Drawing, group: GroupResult, scale: Scale, edges: npt.NDArray[np.float64], *, left: float, right: float,
+    bottom: float, top: float,
 ) -> None:
     finite = group.values[np.isfinite(group.values)]
     counts, _ = np.histogram(finite, bins=edges)
@@ -75,9 +76,7 @@ def _group(
     for count, a, b in zip(counts, edges, edges[1:], strict=False):
         if count:
             (x1, y1), (x2, y2) = axes.at(float(a), 0.0), axes.at(float(b), float(count))
-            drawing.add(
-                Rect(x1 + 0.4, y1, x2 - x1 - 0.8, y2 - y1, fillColor=FAINT, strokeColor=ACCENT, strokeWidth=0.5)
-            )
+            put_rect(drawing, x1 + 0.4, y1, x2 - x1 - 0.8, y2 - y1, fill=FAINT, stroke=ACCENT)
     for limit in (group.limits.lower, group.limits.upper):
         if limit is not None:
             axes.segment(limit.estimate, 0.0, limit.estimate, axes.ys.high, colour=INK, wide=1.6)

@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
-from reportlab.graphics.shapes import Drawing, Line, Polygon, Rect, String
+from reportlab.graphics.shapes import Drawing, Line, Polygon, String
 from reportlab.lib.colors import white
 
 from labstat.judgement.model import Finding
-from labstat.report.axes import ACCENT, ALARM, FAINT, INK, SOFT
+from labstat.report.axes import ACCENT, ALARM, FAINT, INK, SOFT, put_rect
 from labstat.report.fonts import TEXT, register
 
 REACH = 2.0
@@ -34,7 +34,7 @@ def share_bar(finding: Finding, *, width: float, height: float) -> Drawing:
     drawing = Drawing(width, height)
     middle = height / 2
     left, right = _x(-1.0, width), _x(1.0, width)
-    drawing.add(Rect(left, 1, right - left, height - 2, fillColor=FAINT, strokeColor=None, strokeWidth=0))
+    put_rect(drawing, left, 1, right - left, height - 2, fill=FAINT)
     for share in (-1.0, 1.0):
         x = _x(share, width)
         drawing.add(Line(x, 0, x, height, strokeColor=INK, strokeWidth=0.8))
@@ -50,9 +50,9 @@ def share_bar(finding: Finding, *, width: float, height: float) -> Drawing:
     colour = ALARM if finding.finding == "beyond" else ACCENT
     filled = finding.finding in ("within", "beyond")
     thick = 3.6
-    drawing.add(
-        Rect(a, middle - thick / 2, max(b - a, 1.2), thick, fillColor=colour if filled else white,
-             strokeColor=colour, strokeWidth=0.9)
+    put_rect(
+        drawing, a, middle - thick / 2, max(b - a, 1.2), thick, fill=colour if filled else white, stroke=colour,
+        line=0.9,
     )
     for share, x, way in ((low, a, -1), (high, b, 1)):
         if abs(share) > REACH and (share < 0) == (way < 0):

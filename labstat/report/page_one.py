@@ -1,0 +1,269 @@
+"""The first page: what was asked, what the evidence says, what is proposed, and room for the decision."""
+
+from __future__ import annotations
+
+from reportlab.lib.colors import white
+from reportlab.platypus import Flowable, KeepTogether, Paragraph, Spacer, Table, TableStyle
+
+from labstat.judgement.model import Finding, Judgement
+from labstat.report.axes import ALARM, FAINT, INK, SOFT
+from labstat.report.differences import difference_plot
+from labstat.report.fonts import BOLD, markup
+from labstat.report.frame import Bookmark, usable_width
+from labstat.report.model import RunContext
+from labstat.report.numbers import number, percent, plain, signed
+from labstat.report.share_bar import share_axis, share_bar
+from labstat.report.styles import (
+    BODY,
+    DANGER,
+    HEAD,
+    PROPOSAL,
+    SECTION,
+    SMALL,
+    TINT,
+    TITLE,
+    beside,
+    bold_lead,
+    boxed,
+    table,
+    text,
+)
+from labstat.report.words import allowed, bias_decimals, count, finding_number, with_interval
+from labstat.study_results import ComparisonResult, StudyResult
+
+MOST_ROWS = 7
+"""Questions shown on page one; the ones nearest the edge come first, all are in the table of page two."""
+
+MOST_DANGERS = 3
+ORDER = {"beyond": 0, "not covered": 1, "unsettled": 2, "within": 3}
+
+
+def page_one(study: StudyResult, judgement: Judgement, context: RunContext) -> list[Flowable]:
+    """Everything a director needs in two minutes, in this order and on this page."""
+    wide = usable_width(context.plan.page)
+    story: list[Flowable] = [Bookmark(study.data.plan.name), *_head(study, context, wide)]
+    story.append(boxed([text("Proposal to the director", HEAD), text(judgement.proposal, PROPOSAL, most=1200)], wide,
+                       line=INK, fill=TINT))
+    story += _dangers(judgement, wide)
+    if judgement.findings:
+        story += _questions(study, judgement, wide)
+    story += _reference(study, wide)
+    if study.comparisons:
+        story += _patients(study)
+    story += _figure(study, wide)
+    story += _examined(study, judgement)
+    story.append(KeepTogether(_decision(context, wide)))
+    return story
+
+
+def _head(study: StudyResult, context: RunContext, wide: float) -> list[Flowable]:
+    plan = study.data.plan
+    parts = []
+    for result in study.comparisons[:1]:
+        names = ", ".join(other.data.candidate for other in study.comparisons)
+        parts.append(f"{names} (candidate) against {result.data.comparative} (comparative); purpose: new procedure")
+    if study.groups:
+        parts.append("reference limits")
+    if plan.specimen_type:
+        parts.append(plan.specimen_type)
+    facts = [
+        f"Report {context.plan.report_number or 'without number'}, {context.plan.issued or 'not dated'}",
+        context.plan.laboratory,
+        context.plan.title,
+    ]
+    left: list[Flowable] = [text(f"{plan.name} ({plan.unit})", TITLE), text("; ".join(parts), BODY)]
+    return [beside(left, [text(fact, SMALL) for fact in facts], (wide * 0.66, wide * 0.34)), Spacer(0, 5)]
+
+
+def _dangers(judgement: Judgement, wide: float) -> list[Flowable]:
+    stops = [(caution.code, caution.text) for caution in judgement.cautions if caution.weight == "stop"]
+    beyond = [
+        ("beyond", f"at {finding.where} the whole interval lies outside the allowance")
+        for finding in judgement.findings if finding.finding == "beyond"
+    ]
+    entries = [*beyond, *stops]
+    if not entries:
+        return []
+    lines: list[Flowable] = [bold_lead("Stop.", sentence, DANGER) for _, sentence in entries[:MOST_DANGERS]]
+    if len(entries) > MOST_DANGERS:
+        lines.append(text(f"{len(entries) - MOST_DANGERS} more on the following pages", DANGER))
+    return [Spacer(0, 4), boxed(lines, wide, line=ALARM)]
+
+
+def nearest_first(findings: tuple[Finding, ...]) -> list[Finding]:
+    """Findings in the order of what they ask of the reader."""
+    return sorted(findings, key=lambda finding: ORDER[finding.finding])
+
+
+def _questions(study: StudyResult, judgement: Judgement, wide: float) -> list[Flowable]:
+    plan = study.data.plan
+    bar = 96.0
+    widths = (wide * 0.21, wide * 0.22, wide * 0.20, bar + 8, wide - wide * 0.63 - bar - 8)
+    chosen = nearest_first(judgement.findings)[:MOST_ROWS]
+    kept = [finding for finding in judgement.findings if finding in chosen]
+    rows: list[list[Flowable]] = [[
+        text("Question", HEAD), text("Bias and its interval", HEAD), text("Allowed, and by what", HEAD),
+        share_axis(width=bar, height=9), text("Finding", HEAD),
+    ]]
+    for finding in kept:
+        words: list[Flowable] = [Paragraph(f'<font name="{BOLD}">{markup(finding.finding)}</font>', SMALL)]
+        if finding.counts != finding.finding:
+            words.append(text(f"counts as {finding.counts}", SMALL))
+        if finding.rests_on:
+            words.append(text(finding.rests_on, SMALL, most=160))
+        allowance = [text(allowed(finding, plan.decimals, plan.unit)), text(finding.source or "", SMALL, most=70)]
+        rows.append([
+            text(f"Is the bias at {finding.where} within the allowance?"),
+            text(finding_number(finding, plan.decimals, plan.unit)), allowance,  # type: ignore[list-item]
+            share_bar(finding, width=bar, height=13), words,  # type: ignore[list-item]
+        ])
+    grid = Table(rows, colWidths=list(widths), hAlign="LEFT")
+    grid.setStyle(
+        TableStyle([
+            ("VALIGN", (0, 0), (-1, -1), "TOP"), ("VALIGN", (0, 0), (-1, 0), "BOTTOM"),
+            ("LINEBELOW", (0, 0), (-1, 0), 0.8, INK), ("LINEBELOW", (0, 1), (-1, -1), 0.3, FAINT),
+            ("LEFTPADDING", (0, 0), (-1, -1), 2), ("RIGHTPADDING", (0, 0), (-1, -1), 4),
+            ("TOPPADDING", (0, 0), (-1, -1), 2), ("BOTTOMPADDING", (0, 0), (-1, -1), 2.5),
+        ])
+    )
+    story: list[Flowable] = [text("What the evidence says", SECTION), grid]
+    left = len(judgement.findings) - len(kept)
+    if left:
+        more = count(left, "more question is", "more questions are")
+        story.append(text(f"{more} in the tables of the following pages; those shown ask most of the reader."))
+    return story
+
+
+def _reference(study: StudyResult, wide: float) -> list[Flowable]:
+    """The limits in short where the study has them."""
+    if not study.groups:
+        return []
+    plan = study.data.plan
+    rows = []
+    for group in study.groups[:6]:
+        name = ", ".join(f"{column} {value}" for column, value in group.partition.items()) or "all"
+        adopted = "none given"
+        if group.adopted is not None:
+            low, high = group.adopted.low, group.adopted.high
+            adopted = f"{'–' if low is None else plain(low)} to {'–' if high is None else plain(high)}"
+        rows.append([
+            name, str(group.limits.n), group.limits.method,
+            with_interval(group.limits.lower, plan.decimals), with_interval(group.limits.upper, plan.decimals), adopted,
+        ])
+    head = ["Group", "n", "Method", f"Lower limit ({plan.unit})", f"Upper limit ({plan.unit})", f"In use ({plan.unit})"]
+    widths = (wide * 0.18, wide * 0.07, wide * 0.11, wide * 0.25, wide * 0.25, wide * 0.14)
+    story: list[Flowable] = [text("Reference limits, each with its interval", SECTION), table(head, rows, widths)]
+    if len(study.groups) > len(rows):
+        story.append(text(f"{len(study.groups) - len(rows)} more groups on the following pages", SMALL))
+    return story
+
+
+def _patients(study: StudyResult) -> list[Flowable]:
+    plan = study.data.plan
+    story: list[Flowable] = [text("For patients", SECTION)]
+    for result in study.comparisons:
+        moved = []
+        for item in result.levels[:4]:
+            c = item.changes
+            moved.append(
+                f"at {plain(c.at)}: {c.up} up ({percent(c.up_low, 0)} to {percent(c.up_high, 0)}), "
+                f"{c.down} down ({percent(c.down_low, 0)} to {percent(c.down_high, 0)})"
+            )
+        words = ""
+        if moved:
+            words = (
+                f"of {result.n} specimens, results that change side of a level, with exact 95 % intervals: "
+                f"{'; '.join(moved)}. These are not rates among patients. "
+            )
+        story.append(bold_lead(f"{result.data.candidate}:", words + _largest(result, plan.decimals, plan.unit)))
+        jumps = ", ".join(
+            f"{signed(item.leading.bias.estimate, bias_decimals(plan.decimals))} at {plain(item.level.at)}"
+            for item in result.levels[:4]
+        )
+        if jumps:
+            story.append(text(f"Expected jump of serial results on the day of change: {jumps} {plan.unit}."))
+    return story
+
+
+def _largest(result: ComparisonResult, decimals: int, unit: str) -> str:
+    d = result.data.y - result.data.x
+    at = int(max(range(d.size), key=lambda i: abs(float(d[i]))))
+    return (
+        f"Largest single difference: {signed(float(d[at]), decimals)} {unit}, specimen {result.data.specimens[at]} "
+        f"({number(float(result.data.x[at]), decimals)} and {number(float(result.data.y[at]), decimals)})."
+    )
+
+
+def _figure(study: StudyResult, wide: float) -> list[Flowable]:
+    if not study.comparisons:
+        return []
+    result = study.comparisons[0]
+    plot = difference_plot(result, study.data.plan, width=wide * 0.66, height=172)
+    strip: list[Flowable] = [text("Specimens", HEAD)]
+    plan = study.data.plan
+    low, high = result.range
+    rows = study.data.rows["comparison"]
+    facts = [
+        f"{result.n} measured by both procedures",
+        f"{number(low, plan.decimals)} to {number(high, plan.decimals)} {plan.unit} by {result.data.comparative}",
+        "days not known" if result.days is None else count(result.days, "day", "days"),
+        f"up to {result.replicates[0]} and {result.replicates[1]} replicates",
+        f"rows: {rows.read} read, {rows.used} used",
+    ]
+    left = [
+        f"{number} {why}" for why, number in (
+            ("excluded", rows.excluded), ("censored", rows.censored), ("missing", rows.missing),
+            ("unpaired", rows.unpaired),
+        ) if number
+    ]
+    facts.append("left out: " + (", ".join(left) if left else "none"))
+    strip += [text(f"– {fact}") for fact in facts]
+    if len(study.comparisons) > 1:
+        strip.append(text(f"The figure shows {result.data.candidate}; the others follow."))
+    return [
+        text("Differences", SECTION),
+        beside([plot], [Spacer(0, 4), *strip], (wide * 0.68, wide * 0.32)),
+    ]
+
+
+def _examined(study: StudyResult, judgement: Judgement) -> list[Flowable]:
+    story: list[Flowable] = []
+    if judgement.not_examined:
+        story.append(bold_lead("Not examined here:", "; ".join(judgement.not_examined) + "."))
+    elsewhere = study.data.plan.elsewhere
+    if elsewhere:
+        listed = "; ".join(f"{e.item}: {e.outcome} ({e.document})" for e in elsewhere)
+        story.append(bold_lead("Examined elsewhere:", listed + "."))
+    if study.comparisons:
+        story.append(text("Bias is relative to the procedure in use; it says nothing of trueness."))
+    return [Spacer(0, 3), *story] if story else []
+
+
+def _decision(context: RunContext, wide: float) -> list[Flowable]:
+    """The block that the director fills in; the program proposes, it does not decide."""
+    boxes = Table(
+        [["☐ accept", "☐ accept with restriction", "☐ reject", "☐ more data"]], colWidths=[wide * 0.235] * 4,
+    )
+    boxes.setStyle(TableStyle([("FONT", (0, 0), (-1, -1), "Text", 8.5), ("LEFTPADDING", (0, 0), (-1, -1), 0),
+                               ("TOPPADDING", (0, 0), (-1, -1), 1), ("BOTTOMPADDING", (0, 0), (-1, -1), 2)]))
+    lines = Table(
+        [["Restriction or reason", "", "", ""], ["Name", context.plan.reviewer, "Date", ""], ["Signature", "", "", ""]],
+        colWidths=[wide * 0.17, wide * 0.45, wide * 0.07, wide * 0.25], rowHeights=[15, 15, 17],
+    )
+    lines.setStyle(
+        TableStyle([
+            ("FONT", (0, 0), (-1, -1), "Text", 7.5), ("LINEBELOW", (1, 0), (-1, 0), 0.4, SOFT),
+            ("LINEBELOW", (1, 1), (1, 1), 0.4, SOFT), ("LINEBELOW", (3, 1), (3, 1), 0.4, SOFT),
+            ("LINEBELOW", (1, 2), (-1, 2), 0.4, SOFT), ("LEFTPADDING", (0, 0), (0, -1), 0),
+            ("TEXTCOLOR", (1, 1), (1, 1), SOFT), ("BOTTOMPADDING", (0, 0), (-1, -1), 2),
+            ("VALIGN", (0, 0), (-1, -1), "BOTTOM"),
+        ])
+    )
+    words = (
+        "A decision against the proposal needs a reason. The laboratory's accreditation rules decide; this report is "
+        "no medical device and no substitute for qualified review."
+    )
+    return [
+        Spacer(0, 5),
+        boxed([text("Decision of the director", HEAD), boxes, lines, text(words, SMALL)], wide, line=INK, fill=white),
+    ]

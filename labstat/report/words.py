@@ -1,0 +1,78 @@
+"""Results in the words and decimals that the pages share."""
+
+from __future__ import annotations
+
+from labstat.judgement.model import Finding
+from labstat.judgement.wording import decimals_that_tell
+from labstat.report.numbers import number, plain, signed, signed_span, span
+from labstat.resample.estimate import Estimate
+
+INTERVALS = {
+    "calibrated": "calibrated", "calibrated-bound": "calibrated to its bound", "percentile": "percentile",
+    "bca": "BCa", "jackknife": "jackknife", "rank": "rank", "normal": "t",
+}
+
+METHODS = {
+    "ordinary": "Ordinary least squares", "deming": "Deming", "weighted-deming": "Weighted Deming",
+    "passing-bablok": "Passing–Bablok",
+}
+
+LIMITS = {"rank": "rank", "robust": "robust", "transformed": "transformed"}
+
+
+def bias_decimals(decimals: int) -> int:
+    """Biases are shown with one decimal more than results."""
+    return decimals + 1
+
+
+def finding_decimals(finding: Finding, decimals: int) -> int:
+    """Decimals at which the printed interval does not contradict the finding."""
+    bounds = [value for value in (finding.low, finding.high) if value is not None]
+    edges = [value for value in (finding.allowed_low, finding.allowed_high) if value is not None]
+    return decimals_that_tell(bounds, edges, bias_decimals(decimals))
+
+
+def finding_number(finding: Finding, decimals: int, unit: str) -> str:
+    """Estimate with interval and unit: "+3.1 (+1.9 to +4.2) µmol/L"."""
+    digits = finding_decimals(finding, decimals)
+    if finding.estimate is None:
+        return "no number"
+    return f"{signed(finding.estimate, digits)} ({signed_span(finding.low, finding.high, digits)}) {unit}"
+
+
+def allowed(finding: Finding, decimals: int, unit: str) -> str:
+    """What is allowed, in units: "±9 µmol/L (8 or 10 %)"."""
+    low, high = finding.allowed_low, finding.allowed_high
+    if low is None or high is None:
+        return finding.allowance or "no criterion"
+    digits = finding_decimals(finding, decimals)
+    edges = f"±{_short(high, digits)}" if low == -high else f"{_short(low, digits)} to {_short(high, digits)}"
+    return f"{edges} {unit} ({finding.allowance})"
+
+
+def _short(value: float, digits: int) -> str:
+    text = number(value, digits)
+    return plain(value) if len(plain(value)) <= len(text) else text
+
+
+def with_interval(made: Estimate | None, digits: int, *, sign: bool = False) -> str:
+    """Estimate and interval in one cell."""
+    if made is None:
+        return "–"
+    show, between = (signed, signed_span) if sign else (number, span)
+    return f"{show(made.estimate, digits)} ({between(made.low, made.high, digits)})"
+
+
+def how(made: Estimate) -> str:
+    """How an interval was obtained: kind and resamples."""
+    kind = INTERVALS.get(made.interval, made.interval)
+    if made.resamples is None:
+        return kind
+    if made.resamples == "exact":
+        return f"{kind}, exact bootstrap"
+    return f"{kind}, {made.resamples} resamples"
+
+
+def count(n: int, one: str, many: str) -> str:
+    """"1 specimen", "14 specimens"."""
+    return f"{n} {one if n == 1 else many}"
