@@ -90,7 +90,7 @@ def completed(raw: dict[str, Any]) -> dict[str, Any]:
 def validated(raw: dict[str, Any], text: str, problems: Problems) -> schema.PlanKeys | None:
     """The plan's keys and types; every error becomes a problem.
 
-    What is wrong is left out where it has a default, so that the tables can be read too and all problems be told at once.
+    What is wrong is left out where it has a default, so that the tables can be read too and all be told at once.
     """
     try:
         return schema.PlanKeys.model_validate(raw)
