@@ -113,7 +113,7 @@ def _rests(scene: LevelScene) -> str | None:
     if finding is None or finding.rests_on is None:
         return None
     if finding.finding == finding.counts:
-        return f"the finding at {_at(scene)}, {finding.finding}, {finding.rests_on}: it would be another without"
+        return f"the finding at {_at(scene)}, {finding.finding}, {finding.rests_on}: otherwise it would be another"
     return (
         f"the finding at {_at(scene)}, {finding.finding}, {finding.rests_on} and counts as {finding.counts}: "
         "investigate before "
