@@ -23,7 +23,8 @@ def analyte_report(study: StudyResult, judgement: Judgement, context: RunContext
     story: list[Flowable] = [*page_one(study, judgement, context), PageBreak()]
     lost = missing(_user_text(study, context))
     if lost:
-        story.append(text(f"The embedded font has no sign for {len(lost)} characters of the names; they show as \ufffd."))
+        words = f"The embedded font has no sign for {len(lost)} characters of the names; they show as \ufffd."
+        story.append(text(words))
     for index, result in enumerate(study.comparisons):
         story += comparison_pages(result, plan, wide=wide, with_differences=index > 0)
     story += reference_pages(study, wide=wide, level=context.plan.limit_level)

@@ -109,7 +109,7 @@ class Axes:
         """Ticks, their labels, a faint grid, the frame and the titles."""
         for axis, most in (("x", x_ticks), ("y", y_ticks)):
             scale = self.xs if axis == "x" else self.ys
-            ticks = scale.ticks(most)
+            ticks = scale.ticks(most) if most else []
             end = -math.inf
             for tick, label in zip(ticks, tick_labels(ticks), strict=True):
                 if axis == "x":

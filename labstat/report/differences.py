@@ -38,7 +38,6 @@ def difference_plot(result: ComparisonResult, analyte: AnalytePlan, *, width: fl
         x_title=with_unit("Mean of both procedures", analyte.unit),
         y_title=with_unit(f"{data.candidate} minus {data.comparative}", unit), y_ticks=6,
     )
-    level_marks(axes, [level.level.at for level in result.levels])
     for at, low, high in allowed:
         x, top = axes.at(at, high)
         bottom = axes.at(at, low)[1]
@@ -47,6 +46,7 @@ def difference_plot(result: ComparisonResult, analyte: AnalytePlan, *, width: fl
             for y in (bottom, top):
                 if axes.bottom <= y <= axes.top:
                     axes.rule(x - 7, y, x + 7, y, INK, 1.2)
+    level_marks(axes, [level.level.at for level in result.levels])
     axes.segment(axes.xs.low, 0.0, axes.xs.high, 0.0, colour=SOFT, wide=0.8, dash=(4, 2.5))
     _agreement(axes, result)
     flagged = {outlier.specimen for outlier in result.outliers}

@@ -17,13 +17,16 @@ from labstat.report.styles import BODY, HEAD, SECTION, SMALL, TITLE, bold_lead, 
 from labstat.report.words import allowed, count, finding_number
 
 MANY = (
-    "At most 2.5 % a finding would be within on one side even if the true bias sat at the allowance; requiring all levels "
-    "within does not add false acceptances."
+    "At most 2.5 % a finding would be within on one side even if the true bias sat at the allowance; requiring all "
+    "levels within does not add false acceptances."
 )
 
 
 def overview_report(entries: Sequence[OverviewEntry], context: RunContext) -> bytes:
-    """The overview as a PDF: not computed first, then beyond, not covered, unsettled (closest to the edge first), within."""
+    """The overview as a PDF.
+
+    What could not be computed comes first, then beyond, not covered, unsettled (closest to the edge first), within.
+    """
     plan = context.plan
     wide = usable_width(plan.page)
     ordered = sorted(entries, key=_urgency)
@@ -40,8 +43,8 @@ def overview_report(entries: Sequence[OverviewEntry], context: RunContext) -> by
     story += [text("Analytes, those that need the director first", SECTION), _rows(ordered, wide)]
     story += [Spacer(0, 6), bold_lead("What many findings mean.", MANY)]
     story.append(text(
-        "The bar shows the interval as a share of what is allowed: the shaded part is inside the allowance. The findings and "
-        "proposals are the program's; the director decides, by the laboratory's accreditation rules."
+        "The bar shows the interval as a share of what is allowed: the shaded part is inside the allowance. The "
+        "findings and proposals are the program's; the director decides, by the laboratory's accreditation rules."
     ))
     story += [Spacer(0, 4), *_made(context, wide)]
     story.append(KeepTogether(_signature(context, wide)))
@@ -125,7 +128,9 @@ def _reach(finding: Finding) -> float:
 def _words(judgement: Judgement) -> list[Flowable]:
     numbers: dict[str, int] = {}
     for finding in judgement.findings:
-        word = finding.finding if finding.counts == finding.finding else f"{finding.finding}, counts as {finding.counts}"
+        word = str(finding.finding)
+        if finding.counts != finding.finding:
+            word += f", counts as {finding.counts}"
         numbers[word] = numbers.get(word, 0) + 1
     stops = sum(caution.weight == "stop" for caution in judgement.cautions)
     lines: list[Flowable] = [text(f"{number} {word}") for word, number in numbers.items()]

@@ -61,7 +61,7 @@ def _lines(result: ComparisonResult, wide: float) -> list[Flowable]:
                 remarks.append(f"{METHODS[fit.method]}, {name}: asked for {asked}, but {made.reason}.")
     head = ["Line", "", "Estimate", f"{percent(result.reported.level, 0)} interval", "Kind", "Rank interval (1983)",
             "MC error", "Plain attains", "Failed"]
-    widths = [wide * w for w in (0.19, 0.08, 0.1, 0.17, 0.14, 0.14, 0.07, 0.07, 0.04)]
+    widths = [wide * w for w in (0.18, 0.08, 0.09, 0.16, 0.14, 0.14, 0.07, 0.07, 0.07)]
     story: list[Flowable] = [text("Lines", SECTION), table(head, rows, widths, right=(2, 6, 7, 8))]
     story += [text(remark) for remark in remarks]
     reported = result.reported

@@ -57,8 +57,10 @@ def row_pages(study: StudyResult, wide: float) -> list[Flowable]:
             rows.append([name, *(str(number) for number in numbers)])
     story: list[Flowable] = [
         Bookmark("Rows", 1), text("Rows", SECTION),
-        table(["Table", "Read", "Used", "Excluded", "Censored", "Missing", "Unpaired"], rows, [wide * 0.16] + [wide * 0.1] * 6,
-              right=(1, 2, 3, 4, 5, 6)),
+        table(
+            ["Table", "Read", "Used", "Excluded", "Censored", "Missing", "Unpaired"], rows,
+            [wide * 0.16] + [wide * 0.1] * 6, right=(1, 2, 3, 4, 5, 6),
+        ),
         Spacer(0, 3),
     ]
     if data.left_out:
@@ -88,14 +90,14 @@ def method_pages(study: StudyResult, context: RunContext, wide: float) -> list[F
         story.append(bold_lead(
             "Reference limits.",
             f"Limits at {', '.join(plain(p) for p in plan.reference.limits)}, method {plan.reference.method}: by rank, "
-            "r = p(n + 1) with linear interpolation (Solberg 1987), exact bootstrap (Hutson & Ernst 2000) and rank interval "
-            "(Reed, Henry & Mason 1971); robust (Horn, Pesce & Copeland 1998). Robust limits do not resist outliers in the "
-            f"spread. Confidence of the limits {percent(r.limit_level, 0)}.",
+            "r = p(n + 1) with linear interpolation (Solberg 1987), exact bootstrap (Hutson & Ernst 2000) and rank "
+            "interval (Reed, Henry & Mason 1971); robust (Horn, Pesce & Copeland 1998). Robust limits do not resist "
+            f"outliers in the spread. Confidence of the limits {percent(r.limit_level, 0)}.",
         ))
     story.append(bold_lead(
         "Resampling.",
-        f"Seed {context.seed}, {context.resamples} resamples. Every analyte's stream comes from the seed and its name: the "
-        "same inputs, seed and versions give the same numbers and the same bytes.",
+        f"Seed {context.seed}, {context.resamples} resamples. Every analyte's stream comes from the seed and its name: "
+        "the same inputs, seed and versions give the same numbers and the same bytes.",
     ))
     versions = ", ".join(f"{name} {version}" for name, version in context.versions.items())
     story.append(bold_lead("Versions.", versions + "."))
@@ -125,8 +127,8 @@ def _comparison_methods(plan: AnalytePlan, level: float) -> list[Flowable]:
     return [
         bold_lead(
             "Lines.",
-            f"{lines}. The bias is read from the {METHODS[asked.report]} line: intercept + (slope − 1) × level, in percent "
-            f"of the level's absolute value. Means of replicates.{ratio}",
+            f"{lines}. The bias is read from the {METHODS[asked.report]} line: intercept + (slope − 1) × level, in "
+            f"percent of the level's absolute value. Means of replicates.{ratio}",
         ),
         bold_lead(
             "Intervals.",

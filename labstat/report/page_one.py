@@ -28,7 +28,8 @@ from labstat.report.styles import (
     table,
     text,
 )
-from labstat.report.words import allowed, bias_decimals, count, finding_number, with_interval
+from labstat.report.words import INTERVALS, allowed, bias_decimals, count, finding_number, quoted, with_interval
+from labstat.resample.estimate import Estimate
 from labstat.study_results import ComparisonResult, StudyResult
 
 MOST_ROWS = 7
@@ -148,7 +149,7 @@ def _reference(study: StudyResult, wide: float) -> list[Flowable]:
             adopted = f"{'–' if low is None else plain(low)} to {'–' if high is None else plain(high)}"
         rows.append([
             name, str(group.limits.n), group.limits.method,
-            with_interval(group.limits.lower, plan.decimals), with_interval(group.limits.upper, plan.decimals), adopted,
+            limit_words(group.limits.lower, plan.decimals), limit_words(group.limits.upper, plan.decimals), adopted,
         ])
     head = ["Group", "n", "Method", f"Lower limit ({plan.unit})", f"Upper limit ({plan.unit})", f"In use ({plan.unit})"]
     widths = (wide * 0.18, wide * 0.07, wide * 0.11, wide * 0.25, wide * 0.25, wide * 0.14)
@@ -156,6 +157,15 @@ def _reference(study: StudyResult, wide: float) -> list[Flowable]:
     if len(study.groups) > len(rows):
         story.append(text(f"{len(study.groups) - len(rows)} more groups on the following pages", SMALL))
     return story
+
+
+def limit_words(made: Estimate | None, decimals: int) -> str:
+    """A limit with the interval to quote, and of which kind that is."""
+    if made is None:
+        return "not computed"
+    chosen = quoted(made)
+    kind = "" if chosen.low is None else f", {INTERVALS.get(chosen.interval, chosen.interval)}"
+    return with_interval(chosen, decimals) + kind
 
 
 def _patients(study: StudyResult) -> list[Flowable]:
@@ -198,7 +208,7 @@ def _figure(study: StudyResult, wide: float) -> list[Flowable]:
     if not study.comparisons:
         return []
     result = study.comparisons[0]
-    plot = difference_plot(result, study.data.plan, width=wide * 0.66, height=172)
+    plot = difference_plot(result, study.data.plan, width=wide * 0.66, height=196)
     strip: list[Flowable] = [text("Specimens", HEAD)]
     plan = study.data.plan
     low, high = result.range

@@ -55,7 +55,8 @@ def reference_pages(study: StudyResult, *, wide: float, level: float) -> list[Fl
         story.append(bold_lead("Reference individuals.", listed + "."))
     elif asked is not None:
         story.append(bold_lead(
-            "Reference individuals.", "The plan does not state recruitment, criteria, fasting, posture or specimen type."
+            "Reference individuals.",
+            "The plan does not state recruitment, criteria, fasting, posture or specimen type.",
         ))
     return story
 

@@ -5,9 +5,9 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 from reportlab.graphics.shapes import Drawing
-from reportlab.lib.colors import Color
+from reportlab.lib.colors import Color, white
 
-from labstat.report.axes import SOFT, Axes, put_line, put_text
+from labstat.report.axes import SOFT, Axes, put_line, put_rect, put_text
 from labstat.report.fonts import shown, width
 from labstat.report.numbers import plain
 from labstat.study_results import ComparisonResult
@@ -39,6 +39,7 @@ def level_marks(axes: Axes, levels: Sequence[float]) -> None:
         label = plain(level)
         half = width(label, 6.5) / 2
         if x - half > end + 2:
+            put_rect(axes.drawing, x - half - 1, axes.top - 10, 2 * half + 2, 9, fill=white)
             axes.text(x, axes.top - 8, label, anchor="middle", size=6.5, colour=SOFT)
             end = x + half
 

@@ -11,6 +11,7 @@ from reportlab.graphics.shapes import Drawing, Line
 from labstat.report.axes import ACCENT, FAINT, INK, SHADE, SOFT, Axes, Scale, linear_scale, put_rect
 from labstat.report.fonts import register, shown
 from labstat.report.plot_parts import KeyEntry, key, with_unit
+from labstat.report.words import quoted
 from labstat.round.model import AnalytePlan
 from labstat.study_results import GroupResult
 
@@ -35,7 +36,8 @@ def reference_plot(groups: Sequence[GroupResult], analyte: AnalytePlan, *, width
         finite = group.values[np.isfinite(group.values)]
         values += [float(finite.min()), float(finite.max())]
         for limit in (group.limits.lower, group.limits.upper):
-            values += [v for v in (limit.low, limit.high) if v is not None] if limit is not None else []
+            if limit is not None:
+                values += [v for v in (limit.low, limit.high, limit.rank_low, limit.rank_high) if v is not None]
         if group.adopted is not None:
             values += [v for v in (group.adopted.low, group.adopted.high) if v is not None]
     scale = linear_scale(values, room=0.03)
@@ -48,7 +50,7 @@ def reference_plot(groups: Sequence[GroupResult], analyte: AnalytePlan, *, width
     foot = Axes(drawing, left=40, bottom=bottom, right=width - 6, top=top, x=scale, y=Scale(0, 1))
     _foot(foot, analyte)
     entries: list[KeyEntry] = [
-        ("limit", INK, 1.6, None), ("its interval", SHADE, 6.0, None),
+        ("limit", INK, 1.6, None), ("the interval to quote for it", SHADE, 6.0, None),
     ]
     if any(group.adopted is not None for group in chosen):
         entries.append(("interval in use", SOFT, 1.2, (3, 2)))
@@ -71,8 +73,11 @@ def _group(
     )
     drawing.add(Line(left, bottom, right, bottom, strokeColor=INK, strokeWidth=0.5))
     for limit in (group.limits.lower, group.limits.upper):
-        if limit is not None and limit.low is not None and limit.high is not None:
-            axes.rectangle(limit.low, 0.0, limit.high, axes.ys.high, fill=SHADE)
+        if limit is None:
+            continue
+        shown_limit = quoted(limit)
+        if shown_limit.low is not None and shown_limit.high is not None:
+            axes.rectangle(shown_limit.low, 0.0, shown_limit.high, axes.ys.high, fill=SHADE)
     for count, a, b in zip(counts, edges, edges[1:], strict=False):
         if count:
             (x1, y1), (x2, y2) = axes.at(float(a), 0.0), axes.at(float(b), float(count))

@@ -20,7 +20,9 @@ RIGHT = ParagraphStyle("right", parent=SMALL, alignment=TA_RIGHT)
 HEAD = ParagraphStyle("head", parent=SMALL, fontName=BOLD)
 HEAD_RIGHT = ParagraphStyle("head-right", parent=HEAD, alignment=TA_RIGHT)
 TITLE = ParagraphStyle("title", parent=BODY, fontName=BOLD, fontSize=15, leading=18)
-SECTION = ParagraphStyle("section", parent=BODY, fontName=BOLD, fontSize=9.5, leading=12, spaceBefore=7, spaceAfter=3)
+SECTION = ParagraphStyle(
+    "section", parent=BODY, fontName=BOLD, fontSize=9.5, leading=12, spaceBefore=7, spaceAfter=3, keepWithNext=1
+)
 PROPOSAL = ParagraphStyle("proposal", parent=BODY, fontSize=9.5, leading=12.5)
 DANGER = ParagraphStyle("danger", parent=BODY, fontSize=8, leading=10.4, textColor=ALARM)
 
