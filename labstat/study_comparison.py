@@ -172,6 +172,8 @@ class _Work:
         bounds = bounds_without_each(sample, missing, found)
         names = self._unit_names(fit)
         known = np.flatnonzero(np.all(np.isfinite(bounds), axis=1) & np.isfinite(sample.jackknife))
+        if known.size == 0:
+            return ()
         chosen: list[int] = []
         for side in (0, 1):
             order = known[np.argsort(bounds[known, side], kind="stable")]

@@ -10,7 +10,7 @@ from labstat.report.frame import document, usable_width
 from labstat.report.model import RunContext
 from labstat.report.page_comparison import comparison_pages
 from labstat.report.page_evidence import caution_pages, method_pages, row_pages
-from labstat.report.page_one import page_one
+from labstat.report.page_one import leading_comparison, page_one
 from labstat.report.page_reference import reference_pages
 from labstat.report.styles import text
 from labstat.study_results import StudyResult
@@ -25,8 +25,9 @@ def analyte_report(study: StudyResult, judgement: Judgement, context: RunContext
     if lost:
         words = f"The embedded font has no sign for {len(lost)} characters of the names; they show as \ufffd."
         story.append(text(words))
-    for index, result in enumerate(study.comparisons):
-        story += comparison_pages(result, plan, wide=wide, with_differences=index > 0)
+    for result in study.comparisons:
+        shown_already = result is leading_comparison(study, judgement)
+        story += comparison_pages(result, plan, wide=wide, with_differences=not shown_already)
     story += reference_pages(study, wide=wide, level=context.plan.limit_level)
     story += caution_pages(judgement, wide)
     story += row_pages(study, wide)

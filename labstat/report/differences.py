@@ -6,8 +6,8 @@ import numpy as np
 from reportlab.graphics.shapes import Drawing
 
 from labstat.report.axes import ACCENT, INK, SHADE, SOFT, Axes, linear_scale, log_scale
-from labstat.report.fonts import register, shown
-from labstat.report.plot_parts import KeyEntry, key, level_marks, wide_range, with_unit
+from labstat.report.fonts import register
+from labstat.report.plot_parts import KeyEntry, key, level_marks, specimen_names, wide_range, with_unit
 from labstat.round.model import AnalytePlan
 from labstat.study_results import ComparisonResult
 
@@ -53,7 +53,11 @@ def difference_plot(result: ComparisonResult, analyte: AnalytePlan, *, width: fl
     for specimen, x, y in zip(data.specimens, middle, d, strict=True):
         if np.isfinite(y):
             axes.dot(float(x), float(y), flagged=specimen in flagged)
-    _names(axes, result, percent=percent)
+    places = {specimen: i for i, specimen in enumerate(data.specimens)}
+    specimen_names(
+        axes,
+        [(o.specimen, float(middle[places[o.specimen]]), float(d[places[o.specimen]])) for o in result.outliers],
+    )
     entries: list[KeyEntry] = [
         ("mean difference", ACCENT, 1.3, None), ("its interval", SHADE, 5.0, None),
         ("limits of agreement (95 % of differences)", ACCENT, 0.9, (5, 2)), ("no difference", SOFT, 0.8, (4, 2.5)),
@@ -94,12 +98,3 @@ def _agreement(axes: Axes, result: ComparisonResult) -> None:
             axes.text(axes.right + 9, y - 2.3, name, size=6.5, colour=SOFT)
             taken.append(y)
 
-
-def _names(axes: Axes, result: ComparisonResult, *, percent: bool) -> None:
-    for outlier in result.outliers[:4]:
-        middle = (outlier.x + outlier.y) / 2.0
-        d = 100.0 * (outlier.y - outlier.x) / middle if percent else outlier.y - outlier.x
-        x, y = axes.at(middle, d)
-        inward = x > (axes.left + axes.right) / 2
-        axes.text(x - 5 if inward else x + 5, y - 2.3, shown(outlier.specimen, most=14),
-                  anchor="end" if inward else "start", size=6)

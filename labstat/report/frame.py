@@ -32,6 +32,11 @@ def usable_width(page: str) -> float:
     return page_size(page)[0] - 2 * MARGIN
 
 
+def usable_height(page: str) -> float:
+    """Height between the running head and foot."""
+    return page_size(page)[1] - TOP - BOTTOM + 16
+
+
 class Bookmark(Flowable):
     """An entry in the document's outline at this place; takes no room."""
 
@@ -99,7 +104,7 @@ def document(
         invariant=1, lang="en", initialFontName=TEXT,
     )
     frame = Frame(
-        MARGIN, BOTTOM - 8, size[0] - 2 * MARGIN, size[1] - TOP - BOTTOM + 16, leftPadding=0, rightPadding=0,
+        MARGIN, BOTTOM - 8, size[0] - 2 * MARGIN, usable_height(page), leftPadding=0, rightPadding=0,
         topPadding=0, bottomPadding=0,
     )
     made.addPageTemplates([PageTemplate("page", [frame])])

@@ -7,6 +7,8 @@ import math
 MINUS = "\u2212"
 NONE = "–"
 THIN = "\u202f"
+NOTHING = 1e-12
+"""Smaller than this is rounding of a computed zero."""
 
 
 def number(value: float | None, decimals: int) -> str:
@@ -52,7 +54,7 @@ def significant(value: float | None, digits: int = 3) -> str:
     """A number to so many significant digits, never in powers of ten within reason."""
     if value is None or not math.isfinite(value):
         return NONE
-    if value == 0.0:
+    if abs(value) < NOTHING:
         return "0"
     decimals = max(0, digits - 1 - math.floor(math.log10(abs(value))))
     return number(value, min(decimals, 9))

@@ -9,9 +9,10 @@ from labstat.judgement.model import Finding, Judgement
 from labstat.report.axes import ALARM, FAINT, INK, SOFT
 from labstat.report.differences import difference_plot
 from labstat.report.fonts import BOLD, markup
-from labstat.report.frame import Bookmark, usable_width
+from labstat.report.frame import Bookmark, usable_height, usable_width
 from labstat.report.model import RunContext
 from labstat.report.numbers import number, percent, plain, signed
+from labstat.report.reference_plot import reference_plot
 from labstat.report.share_bar import share_axis, share_bar
 from labstat.report.styles import (
     BODY,
@@ -32,8 +33,11 @@ from labstat.report.words import INTERVALS, allowed, bias_decimals, count, findi
 from labstat.resample.estimate import Estimate
 from labstat.study_results import ComparisonResult, StudyResult
 
-MOST_ROWS = 7
-"""Questions shown on page one; the ones nearest the edge come first, all are in the table of page two."""
+ROWS = (9, 7, 6, 5, 4, 3)
+"""Questions tried to show on page one, so that the decision stays on it; all are in the tables that follow."""
+
+LEAST_FIGURE, BEST_FIGURE = 120.0, 270.0
+"""Height of the figure on page one: what the rest leaves, within these bounds."""
 
 MOST_DANGERS = 3
 ORDER = {"beyond": 0, "not covered": 1, "unsettled": 2, "within": 3}
@@ -41,20 +45,44 @@ ORDER = {"beyond": 0, "not covered": 1, "unsettled": 2, "within": 3}
 
 def page_one(study: StudyResult, judgement: Judgement, context: RunContext) -> list[Flowable]:
     """Everything a director needs in two minutes, in this order and on this page."""
-    wide = usable_width(context.plan.page)
-    story: list[Flowable] = [Bookmark(study.data.plan.name), *_head(study, context, wide)]
-    story.append(boxed([text("Proposal to the director", HEAD), text(judgement.proposal, PROPOSAL, most=1200)], wide,
-                       line=INK, fill=TINT))
-    story += _dangers(judgement, wide)
-    if judgement.findings:
-        story += _questions(study, judgement, wide)
-    story += _reference(study, wide)
-    if study.comparisons:
-        story += _patients(study)
-    story += _figure(study, wide)
-    story += _examined(study, judgement)
-    story.append(KeepTogether(_decision(context, wide)))
-    return story
+    wide, high = usable_width(context.plan.page), usable_height(context.plan.page)
+
+    def above(rows: int) -> list[Flowable]:
+        story: list[Flowable] = [*_head(study, context, wide)]
+        proposal = [text("Proposal to the director", HEAD), text(judgement.proposal, PROPOSAL, most=1200)]
+        story.append(boxed(proposal, wide, line=INK, fill=TINT))
+        story += _dangers(judgement, wide)
+        if judgement.findings:
+            story += _questions(study, judgement, wide, rows)
+        story += _reference(study, wide)
+        if study.comparisons:
+            story += _patients(study)
+        return story
+
+    room = 0.0
+    rows = ROWS[0]
+    for rows in ROWS:
+        rest = [*above(rows), *_examined(study, judgement), *_decision(context, wide)]
+        room = high - _height(rest, wide) - 30.0
+        if room >= LEAST_FIGURE or rows >= len(judgement.findings) + 3:
+            break
+    figure = min(max(room, LEAST_FIGURE), BEST_FIGURE)
+    return [
+        Bookmark(study.data.plan.name), *above(rows), *_figure(study, judgement, wide, figure),
+        *_examined(study, judgement), KeepTogether(_decision(context, wide)),
+    ]
+
+
+def _height(story: list[Flowable], wide: float) -> float:
+    """Height that the flowables take one above the other."""
+    return sum(item.wrap(wide, 10_000.0)[1] + item.getSpaceBefore() + item.getSpaceAfter() for item in story)
+
+
+def leading_comparison(study: StudyResult, judgement: Judgement) -> ComparisonResult:
+    """The comparison whose findings ask most of the reader: its differences are drawn on page one."""
+    ordered = [finding.candidate for finding in nearest_first(judgement.findings)]
+    by_name = {result.data.candidate: result for result in study.comparisons}
+    return next((by_name[name] for name in ordered if name in by_name), study.comparisons[0])
 
 
 def _head(study: StudyResult, context: RunContext, wide: float) -> list[Flowable]:
@@ -77,15 +105,17 @@ def _head(study: StudyResult, context: RunContext, wide: float) -> list[Flowable
 
 
 def _dangers(judgement: Judgement, wide: float) -> list[Flowable]:
-    stops = [(caution.code, caution.text) for caution in judgement.cautions if caution.weight == "stop"]
+    stops = [("Stop:", caution.text) for caution in judgement.cautions if caution.weight == "stop"]
     beyond = [
-        ("beyond", f"at {finding.where} the whole interval lies outside the allowance")
+        ("Beyond:", f"at {finding.where} the whole interval lies outside the allowance")
         for finding in judgement.findings if finding.finding == "beyond"
     ]
     entries = [*beyond, *stops]
     if not entries:
         return []
-    lines: list[Flowable] = [bold_lead("Stop.", sentence, DANGER) for _, sentence in entries[:MOST_DANGERS]]
+    lines: list[Flowable] = [
+        bold_lead(lead, sentence, DANGER) for lead, sentence in entries[:MOST_DANGERS]
+    ]
     if len(entries) > MOST_DANGERS:
         lines.append(text(f"{len(entries) - MOST_DANGERS} more on the following pages", DANGER))
     return [Spacer(0, 4), boxed(lines, wide, line=ALARM)]
@@ -96,25 +126,25 @@ def nearest_first(findings: tuple[Finding, ...]) -> list[Finding]:
     return sorted(findings, key=lambda finding: ORDER[finding.finding])
 
 
-def _questions(study: StudyResult, judgement: Judgement, wide: float) -> list[Flowable]:
+def _questions(study: StudyResult, judgement: Judgement, wide: float, most: int) -> list[Flowable]:
     plan = study.data.plan
     bar = 96.0
-    widths = (wide * 0.21, wide * 0.22, wide * 0.20, bar + 8, wide - wide * 0.63 - bar - 8)
-    chosen = nearest_first(judgement.findings)[:MOST_ROWS]
+    widths = (wide * 0.19, wide * 0.21, wide * 0.20, bar + 8, wide - wide * 0.60 - bar - 8)
+    chosen = nearest_first(judgement.findings)[:most]
     kept = [finding for finding in judgement.findings if finding in chosen]
     rows: list[list[Flowable]] = [[
-        text("Question", HEAD), text("Bias and its interval", HEAD), text("Allowed, and by what", HEAD),
+        text("Is the bias allowed?", HEAD), text("Bias and its interval", HEAD), text("Allowed, and by what", HEAD),
         share_axis(width=bar, height=9), text("Finding", HEAD),
     ]]
     for finding in kept:
         words: list[Flowable] = [Paragraph(f'<font name="{BOLD}">{markup(finding.finding)}</font>', SMALL)]
         if finding.counts != finding.finding:
             words.append(text(f"counts as {finding.counts}", SMALL))
-        if finding.rests_on:
-            words.append(text(finding.rests_on, SMALL, most=160))
+            if finding.rests_on:
+                words.append(text(finding.rests_on, SMALL, most=110))
         allowance = [text(allowed(finding, plan.decimals, plan.unit)), text(finding.source or "", SMALL, most=70)]
         rows.append([
-            text(f"Is the bias at {finding.where} within the allowance?"),
+            text(f"At {finding.where}"),
             text(finding_number(finding, plan.decimals, plan.unit)), allowance,  # type: ignore[list-item]
             share_bar(finding, width=bar, height=13), words,  # type: ignore[list-item]
         ])
@@ -204,11 +234,14 @@ def _largest(result: ComparisonResult, decimals: int, unit: str) -> str:
     )
 
 
-def _figure(study: StudyResult, wide: float) -> list[Flowable]:
+def _figure(study: StudyResult, judgement: Judgement, wide: float, high: float) -> list[Flowable]:
     if not study.comparisons:
-        return []
-    result = study.comparisons[0]
-    plot = difference_plot(result, study.data.plan, width=wide * 0.66, height=196)
+        if not study.groups:
+            return []
+        plot = reference_plot(study.groups, study.data.plan, width=wide, height=high)
+        return [text("Reference values", SECTION), plot]
+    result = leading_comparison(study, judgement)
+    plot = difference_plot(result, study.data.plan, width=wide * 0.66, height=high)
     strip: list[Flowable] = [text("Specimens", HEAD)]
     plan = study.data.plan
     low, high = result.range
@@ -217,7 +250,7 @@ def _figure(study: StudyResult, wide: float) -> list[Flowable]:
         f"{result.n} measured by both procedures",
         f"{number(low, plan.decimals)} to {number(high, plan.decimals)} {plan.unit} by {result.data.comparative}",
         "days not known" if result.days is None else count(result.days, "day", "days"),
-        f"up to {result.replicates[0]} and {result.replicates[1]} replicates",
+        "single results" if max(result.replicates) == 1 else "replicates: up to {} and {}".format(*result.replicates),
         f"rows: {rows.read} read, {rows.used} used",
     ]
     left = [
@@ -229,7 +262,7 @@ def _figure(study: StudyResult, wide: float) -> list[Flowable]:
     facts.append("left out: " + (", ".join(left) if left else "none"))
     strip += [text(f"– {fact}") for fact in facts]
     if len(study.comparisons) > 1:
-        strip.append(text(f"The figure shows {result.data.candidate}; the others follow."))
+        strip.append(text(f"The figure shows {result.data.candidate}; the others stand on the pages that follow."))
     return [
         text("Differences", SECTION),
         beside([plot], [Spacer(0, 4), *strip], (wide * 0.68, wide * 0.32)),

@@ -20,8 +20,9 @@ def reference_pages(study: StudyResult, *, wide: float, level: float) -> list[Fl
         return []
     story: list[Flowable] = [
         Bookmark("Reference limits", 1), text("Reference limits", SECTION),
-        reference_plot(groups, plan, width=wide, height=70 + 62 * min(len(groups), MOST)),
     ]
+    if study.comparisons:  # otherwise the figure stands on page one
+        story.append(reference_plot(groups, plan, width=wide, height=70 + 62 * min(len(groups), MOST)))
     if len(groups) > MOST:
         story.append(text(f"The figure shows the first {MOST} of {len(groups)} groups; the table has all."))
     rows = []

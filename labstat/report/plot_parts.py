@@ -44,6 +44,20 @@ def level_marks(axes: Axes, levels: Sequence[float]) -> None:
             end = x + half
 
 
+def specimen_names(axes: Axes, outliers: Sequence[tuple[str, float, float]]) -> None:
+    """Names of flagged specimens beside their marks, turned inwards at the right edge; none over another."""
+    taken: list[tuple[float, float]] = []
+    for name, at_x, at_y in outliers:
+        x, y = axes.at(at_x, at_y)
+        if any(abs(x - other_x) < 34 and abs(y - other_y) < 8 for other_x, other_y in taken):
+            continue
+        inward = x > (axes.left + axes.right) / 2
+        axes.text(
+            x - 5 if inward else x + 5, y - 2.3, shown(name, most=14), anchor="end" if inward else "start", size=6
+        )
+        taken.append((x, y))
+
+
 KeyEntry = tuple[str, Color, float, tuple[float, ...] | None]
 """Words, colour, width and dash of a line in a figure's key."""
 

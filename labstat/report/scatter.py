@@ -6,8 +6,8 @@ import numpy as np
 from reportlab.graphics.shapes import Drawing
 
 from labstat.report.axes import ACCENT, INK, SHADE, SOFT, Axes, linear_scale, log_scale
-from labstat.report.fonts import register, shown
-from labstat.report.plot_parts import KeyEntry, key, level_marks, wide_range, with_unit
+from labstat.report.fonts import register
+from labstat.report.plot_parts import KeyEntry, key, level_marks, specimen_names, wide_range, with_unit
 from labstat.round.model import AnalytePlan
 from labstat.study_results import ComparisonResult
 
@@ -41,7 +41,7 @@ def scatter(result: ComparisonResult, analyte: AnalytePlan, *, width: float, hei
     flagged = {outlier.specimen for outlier in result.outliers}
     for specimen, x, y in zip(data.specimens, data.x, data.y, strict=True):
         axes.dot(float(x), float(y), flagged=specimen in flagged)
-    _names(axes, result)
+    specimen_names(axes, [(outlier.specimen, outlier.x, outlier.y) for outlier in result.outliers])
     entries: list[KeyEntry] = [
         ("line", ACCENT, 1.3, None), ("its band", SHADE, 5.0, None), ("no difference", SOFT, 0.8, (4, 2.5)),
     ]
@@ -65,11 +65,3 @@ def _allowed(axes: Axes, result: ComparisonResult) -> None:
             if axes.bottom <= y <= axes.top and axes.left <= x <= axes.right:
                 axes.rule(x - 4, y, x + 4, y, INK, 1.0)
 
-
-def _names(axes: Axes, result: ComparisonResult) -> None:
-    """Names of flagged specimens beside their marks, at most four, turned inwards at the right edge."""
-    for outlier in result.outliers[:4]:
-        x, y = axes.at(outlier.x, outlier.y)
-        inward = x > (axes.left + axes.right) / 2
-        axes.text(x - 5 if inward else x + 5, y + 4, shown(outlier.specimen, most=14),
-                  anchor="end" if inward else "start", size=6)

@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import replace
 
 from labstat.judgement.model import Finding
+from labstat.judgement.rules_reference import undercovers
 from labstat.judgement.wording import decimals_that_tell
 from labstat.report.numbers import number, plain, signed, signed_span, span
 from labstat.resample.estimate import Estimate
@@ -18,9 +19,6 @@ METHODS = {
     "ordinary": "Ordinary least squares", "deming": "Deming", "weighted-deming": "Weighted Deming",
     "passing-bablok": "Passing–Bablok",
 }
-
-SHORTFALL = 0.02
-"""A bootstrap interval that attains this much less than its level is not the one to quote."""
 
 LIMITS = {"rank": "rank", "robust": "robust", "transformed": "transformed"}
 
@@ -70,10 +68,11 @@ def with_interval(made: Estimate | None, digits: int, *, sign: bool = False) -> 
 
 def quoted(made: Estimate) -> Estimate:
     """The interval to quote for a limit: the rank interval where the bootstrap's attains too little and one exists."""
-    attained, low, high = made.attained, made.rank_low, made.rank_high
-    if attained is None or low is None or high is None or attained >= made.level - SHORTFALL:
+    if not undercovers(made):
         return made
-    return replace(made, low=low, high=high, interval="rank", resamples=None, attained=made.rank_attained)
+    return replace(
+        made, low=made.rank_low, high=made.rank_high, interval="rank", resamples=None, attained=made.rank_attained
+    )
 
 
 def how(made: Estimate) -> str:
