@@ -225,7 +225,7 @@ def slow_round(folder: Path) -> Path:
 )
 def test_an_interrupted_run_leaves_the_previous_output_and_no_litter(tmp_path, workers, number, status):
     folder = slow_round(tmp_path / "round")
-    package.run_round(folder, only=["A0"], resamples=99, workers=1)
+    package.run_round(folder, only=["A0"], resamples=399, workers=1)
     before = content(folder / "out")
     process = subprocess.Popen(
         command("run", folder, "--workers", workers, "--resamples", "99999"),
@@ -259,5 +259,5 @@ def test_a_run_that_was_killed_outright_hinders_no_later_one(tmp_path):
         package.run_round(folder, resamples=99)
     process.kill()
     process.wait(timeout=60)
-    assert package.run_round(folder, only=["A0"], resamples=99, workers=1).exit_status == 0
+    assert package.run_round(folder, only=["A0"], resamples=399, workers=1).exit_status == 0
     assert sorted(os.listdir(folder)) == ["comparison.csv", "out", "round.toml"]

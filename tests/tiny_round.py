@@ -15,7 +15,7 @@ laboratory = "Quillfen District Laboratory"
 prepared_by = "Validation lead"
 reviewer = "Laboratory director"
 seed = 1
-resamples = 199
+resamples = 399
 
 {analytes}
 """

@@ -123,12 +123,13 @@ def _biases(result: ComparisonResult, analyte: AnalytePlan, wide: float) -> list
         text("Bias at the decision levels", SECTION), table(head, rows, widths, right=(5,)),
     ]
     story += [text(remark) for remark in remarks]
-    errors = [item.leading.bias.monte_carlo_error for item in result.levels]
+    errors = [item.bias.bias.monte_carlo_error for item in result.levels]
     worst = max((e for e in errors if e is not None), default=None)
     first = result.levels[0].bias.bias
+    error = "" if worst is None else f"Largest Monte-Carlo error of a bound {significant(worst, 2)} {unit}. "
     story.append(text(
         f"Bias = intercept + (slope − 1) × level, from the {METHODS[result.reported.method]} line; "
-        f"{how(first)}. Largest Monte-Carlo error of a bound {significant(worst, 2)} {unit}. n near: specimens within "
+        f"{how(first)}. {error}n near: specimens within "
         "25 % of the level. Days lead where their interval is the wider one; it is a t interval of the jackknife over "
         "days. Furthest without one: the interval without the single specimen that moves it most."
     ))

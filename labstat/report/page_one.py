@@ -30,8 +30,7 @@ from labstat.report.styles import (
     text,
 )
 from labstat.report.words import INTERVALS, allowed, bias_decimals, count, finding_number, quoted, with_interval
-from labstat.resample.estimate import Estimate
-from labstat.study_results import ComparisonResult, StudyResult
+from labstat.study_results import ComparisonResult, GroupResult, StudyResult
 
 ROWS = (9, 7, 6, 5, 4, 3)
 """Questions tried to show on page one, so that the decision stays on it; all are in the tables that follow."""
@@ -179,7 +178,7 @@ def _reference(study: StudyResult, wide: float) -> list[Flowable]:
             adopted = f"{'–' if low is None else plain(low)} to {'–' if high is None else plain(high)}"
         rows.append([
             name, str(group.limits.n), group.limits.method,
-            limit_words(group.limits.lower, plan.decimals), limit_words(group.limits.upper, plan.decimals), adopted,
+            _limit(group, "lower", plan.decimals), _limit(group, "upper", plan.decimals), adopted,
         ])
     head = ["Group", "n", "Method", f"Lower limit ({plan.unit})", f"Upper limit ({plan.unit})", f"In use ({plan.unit})"]
     widths = (wide * 0.18, wide * 0.07, wide * 0.11, wide * 0.25, wide * 0.25, wide * 0.14)
@@ -189,10 +188,12 @@ def _reference(study: StudyResult, wide: float) -> list[Flowable]:
     return story
 
 
-def limit_words(made: Estimate | None, decimals: int) -> str:
+def _limit(group: GroupResult, side: str, decimals: int) -> str:
     """A limit with the interval to quote, and of which kind that is."""
+    made = group.limits.lower if side == "lower" else group.limits.upper
     if made is None:
-        return "not computed"
+        asked = any((p >= 0.5) == (side == "upper") for p in group.limits.probabilities)
+        return "not computed" if asked or len(group.limits.probabilities) > 1 else "not asked for"
     chosen = quoted(made)
     kind = "" if chosen.low is None else f", {INTERVALS.get(chosen.interval, chosen.interval)}"
     return with_interval(chosen, decimals) + kind

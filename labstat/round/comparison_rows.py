@@ -25,6 +25,13 @@ class Measured:
     out: list[tuple[Entry, Why, str]] = field(default_factory=list)
     day: str | None = None
 
+    def settle(self) -> None:
+        """Put replicates in the order of their numbers: the order of the rows must not change even the last bit."""
+        if len(self.numbers) > 1 or len(self.censored) > 1:
+            self.numbers.sort(key=_order)
+            self.censored.sort(key=_order)
+        self.day = next((entry.day for entry in self.numbers if entry.day is not None), None)
+
     @property
     def usable(self) -> bool:
         """A number, and no censored replicate beside it: the mean of the others alone would be biased."""
@@ -96,7 +103,7 @@ class _Reader:
                 continue
             entry = entry_of(
                 row.table, row.line, row.cells, identity=specimen, procedure=procedure, replicate=replicate,
-                text=text, column=column,
+                text=text, column=column, day=_day(row),
             )
             self._sort(row, entry, specimen, procedure)
 
@@ -124,7 +131,6 @@ class _Reader:
         reason = first_reason(entry)
         if reason is None:
             measured.numbers.append(entry)
-            measured.day = measured.day or _day(row)
             interval = self.plan.measuring_interval
             if interval is not None and not interval[0] <= entry.result.value <= interval[1]:
                 self.outside += 1
@@ -147,6 +153,9 @@ class _Reader:
 
     def result(self) -> ComparisonRows:
         order = sorted(self.specimens, key=natural)
+        for by_procedure in self.specimens.values():
+            for measured in by_procedure.values():
+                measured.settle()
         comparisons = tuple(self._compared(candidate, order) for candidate in self.asked.candidates)
         out = tuple(self._accounted(order))
         notes = []
@@ -202,6 +211,10 @@ class _Reader:
         if any(state.usable for state in states):
             return None
         return "; ".join(_lacking(name, state) for name, state in zip(partners, states, strict=True))
+
+
+def _order(entry: Entry) -> tuple[object, float, str]:
+    return natural(entry.replicate), entry.result.value, entry.text
 
 
 def _cells(row: Row) -> Iterator[tuple[str, str, str, str]]:

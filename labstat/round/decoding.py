@@ -19,8 +19,9 @@ def decode(data: bytes, *, encoding: str | None) -> tuple[str, str | None]:
     """The text and, where the encoding had to be guessed without proof, a note. Raises :class:`UndecodableError`."""
     if encoding is not None:
         try:
-            return data.decode(encoding), None
-        except (UnicodeDecodeError, LookupError) as error:
+            # a mark at the start is no part of the first column's name, whatever encoding was said
+            return data.decode(encoding).removeprefix("\ufeff"), None
+        except (ValueError, LookupError) as error:
             raise UndecodableError(str(error)) from None
     for mark, name in _MARKS:
         if data.startswith(mark):

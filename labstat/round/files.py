@@ -43,8 +43,9 @@ class Folder:
         except FileNotFoundError:
             self._problems.add(path, None, None, None, "this file does not exist", f"add it, or correct {asked_by}")
             return None
-        except OSError as error:
-            self._problems.add(path, None, None, None, f"cannot be read ({error.strerror})", "check the file")
+        except (OSError, ValueError) as error:
+            why = getattr(error, "strerror", None) or error
+            self._problems.add(path, None, None, None, f"cannot be read ({why})", "check the file")
             return None
         self._inputs[path] = InputFile(str(pure), hashlib.sha256(data).hexdigest())
         return data
@@ -71,7 +72,9 @@ class Folder:
                 from labstat.round.workbook import read_workbook  # noqa: PLC0415
 
                 data = self.bytes_of(keys.path, asked_by)
-                return None if data is None else read_workbook(keys.path, data, sheet=keys.sheet)
+                return None if data is None else read_workbook(
+                    keys.path, data, sheet=keys.sheet, decimal=keys.decimal or "."
+                )
             text = self.text_of(keys.path, asked_by, encoding=keys.encoding)
             if text is None:
                 return None

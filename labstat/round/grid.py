@@ -8,6 +8,7 @@ import io
 from dataclasses import dataclass
 
 DELIMITERS = (";", "\t", ",", "|")
+_NO_DELIMITERS = '"\n\r\x00.-+<>'
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -39,6 +40,8 @@ def read_text_table(file: str, text: str, *, delimiter: str | None) -> Grid:
         line = text[: text.index("\x00")].count("\n") + 1
         raise UnreadableError(line, "holds a NUL character, so it is no text table", "export it again as CSV or XLSX")
     used = delimiter or detect_delimiter(text)
+    if used.isalnum() or used in _NO_DELIMITERS:
+        raise UnreadableError(None, f"cannot be split at {used!r}", 'set delimiter to ",", ";", "|" or a tab')
     reader = csv.reader(io.StringIO(text, newline=""), delimiter=used, strict=True)
     rows: list[tuple[int, list[str]]] = []
     # a million small lists make the garbage collector walk them all again and again

@@ -12,7 +12,7 @@ _KEY = re.compile(r"\s*([A-Za-z0-9_\-.\"' ]+?)\s*=")
 
 def line_of(text: str, path: Path) -> int | None:
     """The line (from 1) of the key at ``path``, or of the nearest table that holds it; ``None`` if nothing fits."""
-    lines = text.splitlines()
+    lines = text.split("\n")  # the line ends of TOML, and no others
     table: Path = ()
     counts: dict[tuple[str, ...], int] = {}
     best: tuple[int, int] | None = None

@@ -14,7 +14,7 @@ from labstat.round.schema import FileKeys
 _COMMA = re.compile(r"[<>≤≥=\s]*[+\u2212-]?\d*,\d+\s*")
 _DOT = re.compile(r"[<>≤≥=\s]*[+\u2212-]?\d*\.\d+\s*")
 _WHOLE = re.compile(r"[<>≤≥=\s]*[+\u2212-]?\d+\s*")
-_THOUSANDS = re.compile(r"[<>≤≥=\s]*[+\u2212-]?[1-9]\d{0,2}[.,]\d{3}\s*")
+THOUSANDS = re.compile(r"[<>≤≥=\s]*[+\u2212-]?[1-9]\d{0,2}[.,]\d{3}\s*")
 
 
 @dataclass(frozen=True, slots=True)
@@ -135,9 +135,11 @@ def _decimal(grid: Grid, keys: FileKeys, columns: Iterable[int], problems: Probl
     commas = [cell for cell in cells if _COMMA.fullmatch(cell)]
     dots = [cell for cell in cells if _DOT.fullmatch(cell)]
     marked, mark = (commas, ",") if len(commas) > len(dots) else (dots, ".")
-    if marked and all(_THOUSANDS.fullmatch(cell) for cell in marked):
+    if marked and all(THOUSANDS.fullmatch(cell) for cell in marked):
         whole = any(_WHOLE.fullmatch(cell) for cell in cells)
-        if mark == "," or whole:
+        # a dot is a decimal mark where nothing speaks against it; whole numbers, or a delimiter of the lands that write
+        # the comma, do
+        if mark == "," or whole or grid.delimiter == ";":
             problems.add(
                 grid.file, None, None, marked[0].strip(),
                 f'it is not clear whether "{mark}" is a decimal mark or separates thousands',

@@ -19,4 +19,5 @@ def fitted(table: Table, row: list[str]) -> list[str] | None:
 
 def wrong_width(table: Table, row: list[str]) -> str:
     """What is wrong with the row, in words."""
-    return f"the row has {len(row)} fields and the header {len(table.grid.header)}"
+    fields = "1 field" if len(row) == 1 else f"{len(row)} fields"
+    return f"the row has {fields} and the header {len(table.grid.header)}"

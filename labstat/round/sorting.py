@@ -28,16 +28,17 @@ class Entry:
     text: str
     reason: str | None
     result: Result
+    day: str | None = None
 
 
 def entry_of(
     table: Table, line: int, row: list[str], *, identity: str, procedure: str | None, replicate: str, text: str,
-    column: str,
+    column: str, day: str | None = None,
 ) -> Entry:
     """A measurement of a row. The result of an excluded row is not looked at: that is often why it was excluded."""
     reason = _reason(table, row)
     result = Result("missing") if reason is not None else read_result(text, decimal=table.decimal)
-    return Entry(table.file, line, column, identity, procedure, replicate, text, reason, result)
+    return Entry(table.file, line, column, identity, procedure, replicate, text, reason, result, day)
 
 
 def _reason(table: Table, row: list[str]) -> str | None:

@@ -20,8 +20,11 @@ RATIO = 300
 COLUMNS, ROWS = 500, 1_100_000
 
 
-def read_workbook(file: str, data: bytes, *, sheet: str | None) -> Grid:
-    """The rows of one sheet (the first, unless named); raises :class:`UnreadableError`."""
+def read_workbook(file: str, data: bytes, *, sheet: str | None, decimal: str) -> Grid:
+    """The rows of one sheet (the first, unless named), numbers with the decimal mark that its texts have.
+
+    Raises :class:`UnreadableError`.
+    """
     _guard(data)
     try:
         values = openpyxl.load_workbook(io.BytesIO(data), read_only=True, data_only=True)
