@@ -237,7 +237,6 @@ def test_the_round_folder_is_never_the_output(good):
 
 
 def test_the_fewest_resamples_are_enough_to_run(tmp_path, good):
-    """With so few, no single specimen is missing from a hundred resamples: nothing is said about any, and nothing "
-    "fails."""
+    """With so few, no specimen is missing from a hundred resamples: nothing is said about any, and nothing fails."""
     report = labstat.run_round(good[0], out=tmp_path / "out", resamples=99, workers=1)
     assert [entry.reason for entry in report.entries] == [None, None]
