@@ -28,7 +28,7 @@ def difference_plot(result: ComparisonResult, analyte: AnalytePlan, *, width: fl
         values += [agreed.lower.estimate, agreed.upper.estimate]
     xs = [float(v) for v in middle]
     axes = Axes(
-        drawing, left=40, bottom=42, right=width - 62, top=height - 16,
+        drawing, left=40, bottom=50, right=width - 62, top=height - 16,
         x=log_scale(xs) if wide_range(result) else linear_scale(xs), y=linear_scale(values, room=0.08),
     )
     unit = "% of the mean" if percent else analyte.unit
@@ -64,7 +64,7 @@ def difference_plot(result: ComparisonResult, analyte: AnalytePlan, *, width: fl
     ]
     if allowed:
         entries.append(("allowed bias at the level", INK, 1.4, None))
-    key(drawing, entries, left=40, bottom=8, right=width)
+    key(drawing, entries, left=40, bottom=19, right=width)  # room for three rows
     return drawing
 
 

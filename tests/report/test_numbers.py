@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import itertools
+
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
@@ -70,7 +72,7 @@ def test_linear_ticks_are_few_rising_evenly_spaced_and_inside(low: float, spread
     assert 1 <= len(ticks) <= most
     slack = 1e-6 * (high - low) + 1e-9 * max(abs(low), abs(high))
     assert all(low - slack <= tick <= high + slack for tick in ticks)
-    steps = [b - a for a, b in zip(ticks, ticks[1:], strict=False)]
+    steps = [b - a for a, b in itertools.pairwise(ticks)]
     assert all(step > 0 and abs(step - steps[0]) <= slack for step in steps)
 
 
@@ -83,6 +85,7 @@ def test_linear_tick_labels_differ_from_each_other(low: float, spread: float) ->
 @given(st.floats(1e-4, 1e4), st.floats(30.0, 1e6))
 def test_log_ticks_are_inside_rise_and_have_distinct_labels(low: float, ratio: float) -> None:
     ticks = log_ticks(low, low * ratio)
-    assert ticks == sorted(set(ticks)) and ticks
+    assert ticks
+    assert ticks == sorted(set(ticks))
     assert all(low * (1 - 1e-8) <= tick <= low * ratio * (1 + 1e-8) for tick in ticks)
     assert len(set(tick_labels(ticks))) == len(ticks)
