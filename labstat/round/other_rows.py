@@ -37,6 +37,18 @@ def partition_columns(asked: ReferencePlan, tables: Iterable[Table], analyte: st
                 )
 
 
+def unmet_groups(analyte: str, asked: ReferencePlan, data: ReferenceData) -> tuple[str, ...]:
+    """Notes on adopted intervals for a label that no individual has: often another spelling of one that some have."""
+    notes: list[str] = []
+    for adopted in asked.adopted:
+        for column, label in adopted.where.items():
+            labels = sorted(set(data.columns.get(column, ())))
+            if labels and label not in labels:
+                hint = did_you_mean(label, labels)
+                notes.append(f'{analyte}: an interval in use is for {column} "{label}", which no individual has{hint}')
+    return tuple(notes)
+
+
 def _cell(row: Row, column: str) -> str:
     at = row.table.named.get(column)
     return clean_name(row.cells[at] if at is not None else row.text(column))

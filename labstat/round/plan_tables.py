@@ -49,17 +49,22 @@ def _rows(
 
 
 def read_allowances(
-    folder: Folder, files: tuple[FileKeys, ...], known: tuple[str, ...], problems: Problems
+    folder: Folder, files: tuple[FileKeys, ...], known: tuple[str, ...], problems: Problems,
+    *, ignore_others: bool,
 ) -> Levels:
-    """Levels by analyte, one row an analyte and level."""
+    """Levels by analyte, one row an analyte and level. A table of the whole laboratory may name other analytes too."""
+    others = 0
     levels: Levels = {}
     for table, line, row in _rows(folder, files, ALLOWANCES, "files.allowances", problems):
         name = clean_name(table.text(row, "analyte"))
+        if name not in known and name and ignore_others:
+            others += 1
+            continue
         if name not in known:
             problems.add(
                 table.file, line, table.header("analyte"), name,
                 f"the plan does not know this analyte{did_you_mean(name, known)}",
-                "correct the name, or add [[analyte]]",
+                'correct the name, add [[analyte]], or set other_analytes = "ignore" in [files]',
             )
             continue
         at = _number(table, line, row, "at", problems)
@@ -70,6 +75,8 @@ def read_allowances(
             source=table.text(row, "source") or None,
         )
         levels.setdefault(name, []).append((Origin(table.file, line), made))
+    if others:
+        folder.notes.append(f"files.allowances: {others} rows of analytes that the plan does not name ignored")
     return levels
 
 

@@ -2,13 +2,12 @@
 
 from __future__ import annotations
 
-import copy
 import tomllib
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
-from typing import Any, cast
+from typing import Any
 
-from pydantic import BaseModel, ValidationError
+from pydantic import ValidationError
 
 from labstat.errors import ArgumentError
 from labstat.round import schema
@@ -16,6 +15,7 @@ from labstat.round.allowance import Allowance, parse_allowance
 from labstat.round.collecting import Problems
 from labstat.round.criteria import criteria_hash
 from labstat.round.locate import Path, line_of
+from labstat.round.mending import fitting, mended
 from labstat.round.model import (
     Adopted,
     AnalytePlan,
@@ -27,6 +27,7 @@ from labstat.round.model import (
     RoundPlan,
 )
 from labstat.round.naming import clean_name, did_you_mean
+from labstat.round.plan_words import in_words, key_words, value_of
 
 PLAN = "round.toml"
 
@@ -62,6 +63,34 @@ def parse_toml(text: str, problems: Problems) -> dict[str, Any] | None:
         return None
 
 
+def checked_defaults(raw: dict[str, Any], text: str, problems: Problems) -> dict[str, Any]:
+    """The raw plan with the wrong keys of ``[defaults]`` told once and taken out, before analytes inherit them."""
+    defaults = raw.get("defaults")
+    if not isinstance(defaults, dict):
+        return raw
+    checked = dict(defaults)
+    for study, model, needed in (
+        ("comparison", schema.ComparisonKeys, {"comparative": "x", "candidate": "y"}),
+        ("reference", schema.ReferenceKeys, {}),
+    ):
+        own = defaults.get(study)
+        if not isinstance(own, dict):
+            continue
+        try:
+            model.model_validate({**needed, **own})
+        except ValidationError as error:
+            told: set[tuple[Path, str]] = set()
+            for path, item in fitting(error, own):
+                whole: Path = ("defaults", study, *path)
+                what, remedy = in_words(whole, item)
+                if (whole, what) not in told:
+                    told.add((whole, what))
+                    problems.add(PLAN, line_of(text, whole), key_words(whole), value_of(item), what, remedy)
+            wrong = {path[2] for path, _ in told}
+            checked[study] = {key: value for key, value in own.items() if key not in wrong}
+    return {**raw, "defaults": checked}
+
+
 def completed(raw: dict[str, Any]) -> dict[str, Any]:
     """Analytes with what they inherit from ``[defaults]``.
 
@@ -87,43 +116,29 @@ def completed(raw: dict[str, Any]) -> dict[str, Any]:
     return {**raw, "analyte": made}
 
 
-def validated(raw: dict[str, Any], text: str, problems: Problems) -> schema.PlanKeys | None:
+def validated(raw: dict[str, Any], text: str, problems: Problems) -> tuple[schema.PlanKeys, frozenset[str]] | None:
     """The plan's keys and types; every error becomes a problem.
 
-    What is wrong is left out where it has a default, so that the tables can be read too and all be told at once.
+    What is wrong is left out or stood in for, so that the tables can be read too and all be told at once. The names
+    are those of the analytes that were changed by this: nothing should be said of their rows.
     """
     try:
-        return schema.PlanKeys.model_validate(raw)
+        return schema.PlanKeys.model_validate(raw), frozenset()
     except ValidationError as error:
         seen: set[tuple[Path, str]] = set()
-        for item in error.errors():
-            path = _plain_path(item["loc"])
-            what, remedy = _in_words(item, raw)
+        for path, item in fitting(error, raw):
+            what, remedy = in_words(path, item)
             if (path, what) not in seen:
                 seen.add((path, what))
-                problems.add(PLAN, line_of(text, path), key_words(path), _value(item), what, remedy)
-        return _mended(raw, [path for path, _ in seen])
-
-
-def _mended(raw: dict[str, Any], wrong: Iterable[Path]) -> schema.PlanKeys | None:
-    """The plan without what is wrong in it; ``None`` when it cannot do without."""
-    mended = copy.deepcopy(raw)
-    for path in sorted(wrong, key=lambda path: [str(part) for part in path], reverse=True):
-        place: Any = mended
-        try:
-            for part in path[:-1]:
-                place = place[part]
-            if len(path) == 2 and path[0] == "round":
-                place[path[1]] = {"seed": 0, "resamples": 9999}.get(str(path[1]), "?")
-            else:
-                del place[path[-1]]
-        except (KeyError, IndexError, TypeError):
-            return None
-    mended["round"] = {k: v for k, v in mended["round"].items() if k in schema.RoundKeys.model_fields}
-    try:
-        return schema.PlanKeys.model_validate(mended)
-    except ValidationError:
-        return None
+                problems.add(PLAN, line_of(text, path), key_words(path), value_of(item), what, remedy)
+        analytes = raw.get("analyte")
+        changed = {path[1] for path, _ in seen if path[0] == "analyte" and len(path) > 1}
+        names = {
+            analyte.get("name") for index, analyte in enumerate(analytes if isinstance(analytes, list) else [])
+            if index in changed and isinstance(analyte, dict)
+        }
+        keys = mended(raw)
+        return None if keys is None else (keys, frozenset(clean_name(name) for name in names if isinstance(name, str)))
 
 
 def built(
@@ -189,6 +204,12 @@ class _Builder:
             interval = (float(low), float(high))
             if not low < high:
                 self.note((*path, "measuring_interval"), [low, high], "must ascend", "write [lowest, highest]")
+        if keys.comparison is None:
+            for origin, level in self.levels.get(name, []):
+                self.note(
+                    (*path, "at"), f"{level.at:g}", f"{name} has a level and no comparison",
+                    "add [analyte.comparison], or remove the row", origin,
+                )
         if keys.comparison is None and keys.reference is None:
             self.note(path, name, "asks for no study", "add [analyte.comparison] or [analyte.reference]")
         comparison = None if keys.comparison is None else self.comparison((*path, "comparison"), keys.comparison, name)
@@ -241,8 +262,7 @@ class _Builder:
         for where, origin, level in said:
             at = float(level.at)
             if at in made:
-                self.note((*where, "at"), level.at, "this level is given twice", "give each level once", origin)
-                continue
+                self.note((*where, "at"), f"{at:g}", "this level is given twice", "give each level once", origin)
             made[at] = Level(
                 at, self.allowance(where, "allowable", level.allowable, origin),
                 self.allowance(where, "total_error", level.total_error, origin), level.source,
@@ -279,12 +299,23 @@ class _Builder:
         }
         return ReferencePlan(
             tuple(float(p) for p in keys.limits), partition, keys.method, keys.interval,
-            tuple(
-                made for index, adopted in enumerate(keys.adopted)
-                if (made := self.adopted((*path, "adopted", index), adopted, partition)) is not None
-            ),
-            about, keys.minimum_n, keys.recommended_n,
+            self.all_adopted(path, keys, partition), about, keys.minimum_n, keys.recommended_n,
         )
+
+    def all_adopted(
+        self, path: Path, keys: schema.ReferenceKeys, partition: tuple[str, ...]
+    ) -> tuple[Adopted, ...]:
+        made: list[Adopted] = []
+        for index, said in enumerate(keys.adopted):
+            where: Path = (*path, "adopted", index)
+            adopted = self.adopted(where, said, partition)
+            if adopted is None:
+                continue
+            if any(other.where == adopted.where for other in made):
+                group = ", ".join(adopted.where.values()) or None
+                self.note(where, group, "this group has an adopted interval already", "give each group one")
+            made.append(adopted)
+        return tuple(made)
 
     def adopted(self, path: Path, keys: dict[str, Any], partition: tuple[str, ...]) -> Adopted | None:
         limits: dict[str, float | None] = {"low": None, "high": None}
@@ -314,65 +345,4 @@ class _Builder:
         return Adopted(where, low, high) if good else None
 
 
-def _plain_path(loc: tuple[int | str, ...]) -> Path:
-    """pydantic's place without the names of alternatives in it ("str", "FileKeys", "list[…]")."""
-    alternatives = {"str", "float", "int", "date", "FileKeys", "none"}
-    return tuple(
-        part for part in loc
-        if isinstance(part, int) or not (
-            part in alternatives or part.startswith(("list[", "literal[", "constrained-", "function-", "union["))
-        )
-    )
-
-
-def key_words(path: Path) -> str:
-    """A path in words: ``analyte[2].comparison.levels[1].source``, counted from 1 as people do."""
-    words = ""
-    for part in path:
-        words += f"[{part + 1}]" if isinstance(part, int) else ("." if words else "") + part
-    return words
-
-
-def _value(item: Any) -> str | None:
-    value = item.get("input")
-    if item["type"] in ("missing", "extra_forbidden") and isinstance(value, (dict, list)):
-        return None
-    if isinstance(value, (dict, list, BaseModel)):
-        return None
-    return str(value)
-
-
-def _in_words(item: Any, raw: dict[str, Any]) -> tuple[str, str]:
-    kind, context = item["type"], item.get("ctx", {})
-    if kind == "missing":
-        return "is missing", "add it"
-    if kind == "extra_forbidden":
-        known = _known_keys(_plain_path(item["loc"])[:-1])
-        return f"is no key here{did_you_mean(str(item['loc'][-1]), known)}", f"keys here: {', '.join(known)}"
-    if kind == "literal_error":
-        return f"must be {context['expected']}", "choose one of these"
-    names = {
-        "string_type": "must be text", "int_type": "must be a whole number", "float_type": "must be a number",
-        "list_type": "must be a list", "dict_type": "must be a table", "model_type": "must be a table",
-        "finite_number": "must be a finite number", "date_type": "must be a date or text",
-        "bool_type": "must be true or false",
-    }
-    if kind in names:
-        return names[kind], "correct the value"
-    said = cast("str", item["msg"]).replace("Input should", "should").replace("Value should", "should")
-    return said, "correct the value"
-
-
-def _known_keys(path: Path) -> tuple[str, ...]:
-    """The keys that the schema knows at a place."""
-    places: dict[tuple[str, ...], type[BaseModel]] = {
-        (): schema.PlanKeys, ("round",): schema.RoundKeys, ("round", "approved"): schema.ApprovalKeys,
-        ("files",): schema.FilesKeys, ("defaults",): schema.DefaultsKeys, ("analyte",): schema.AnalyteKeys,
-        ("analyte", "comparison"): schema.ComparisonKeys, ("analyte", "reference"): schema.ReferenceKeys,
-        ("analyte", "comparison", "levels"): schema.LevelKeys, ("analyte", "elsewhere"): schema.ElsewhereKeys,
-    }
-    model = places.get(tuple(part for part in path if isinstance(part, str)), schema.FileKeys)
-    return tuple(model.model_fields)
-
-
-__all__ = ["PLAN", "Origin", "ReadPlan", "built", "completed", "key_words", "parse_toml", "validated"]
+__all__ = ["PLAN", "Origin", "ReadPlan", "built", "checked_defaults", "completed", "parse_toml", "validated"]

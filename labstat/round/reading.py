@@ -13,9 +13,9 @@ from labstat.round.comparison_rows import ComparisonRows, read_comparison
 from labstat.round.files import Folder, listed
 from labstat.round.model import AnalyteData, AnalytePlan, LeftOut, Round, RowCount
 from labstat.round.naming import clean_name, did_you_mean
-from labstat.round.other_rows import ReferenceRows, partition_columns, read_precision, read_reference
+from labstat.round.other_rows import ReferenceRows, partition_columns, read_precision, read_reference, unmet_groups
 from labstat.round.plan_tables import read_allowances, read_analytes
-from labstat.round.planning import PLAN, Origin, ReadPlan, built, completed, parse_toml, validated
+from labstat.round.planning import PLAN, Origin, ReadPlan, built, checked_defaults, completed, parse_toml, validated
 from labstat.round.rows import COMPARISON, PRECISION, REFERENCE, Sheets
 
 NO_ROWS = RowCount(0, 0, 0, 0, 0, 0)
@@ -35,13 +35,17 @@ def read_round(folder: str | Path, *, only: Sequence[str] = ()) -> Round:
         problems.add(str(folder), None, None, None, "this folder does not exist", remedy)
         raise RoundError(problems.all())
     files = Folder(path, problems)
-    plan = _plan(files, problems)
-    if plan is None:
+    made = _plan(files, problems)
+    if made is None:
         raise RoundError(problems.all())
+    plan, changed = made
+    broken = bool(problems.unusable())
     chosen = _chosen(plan, only, problems)
     data = _Tables(files, plan, problems).read(chosen)
     if problems.unusable():
-        raise RoundError(problems.all())
+        # where the plan is broken, a row that does not fit it may be right: only rows of sound analytes are told
+        sound = {analyte.name for analyte in plan.plan.analytes} - changed
+        raise RoundError([p for p in problems.all() if not broken or p.analyte is None or p.analyte in sound])
     by_analyte = problems.of_analytes()
     names = {analyte.name for analyte in plan.plan.analytes}
     return Round(
@@ -58,14 +62,15 @@ def _with_problems(data: AnalyteData, by_analyte: dict[str, Any]) -> AnalyteData
     )
 
 
-def _plan(files: Folder, problems: Problems) -> ReadPlan | None:
+def _plan(files: Folder, problems: Problems) -> tuple[ReadPlan, frozenset[str]] | None:
     text = files.text_of(PLAN, "the plan")
     raw = None if text is None else parse_toml(text, problems)
     if text is None or raw is None:
         return None
-    keys = validated(completed(raw), text, problems)
-    if keys is None:
+    checked = validated(completed(checked_defaults(raw, text, problems)), text, problems)
+    if checked is None:
         return None
+    keys, changed = checked
 
     def tables(said: schema.Files | None, default: str) -> tuple[schema.FileKeys, ...]:
         return listed(said, default=default, folder=files.folder, needed=False)
@@ -75,8 +80,9 @@ def _plan(files: Folder, problems: Problems) -> ReadPlan | None:
     keys = keys.model_copy(update={"analyte": [*keys.analyte, *(analyte for _, analyte in tabled)]})
     origins: dict[str, Origin] = {clean_name(analyte.name): origin for origin, analyte in tabled}
     names = tuple(clean_name(analyte.name) for analyte in keys.analyte)
-    levels = read_allowances(files, tables(keys.files.allowances, "allowances.csv"), names, problems)
-    return built(keys, text, problems, levels, origins)
+    levels = read_allowances(files, tables(keys.files.allowances, "allowances.csv"), names, problems,
+                             ignore_others=keys.files.other_analytes == "ignore")
+    return built(keys, text, problems, levels, origins), changed
 
 
 def _chosen(plan: ReadPlan, only: Sequence[str], problems: Problems) -> tuple[AnalytePlan, ...]:
@@ -158,6 +164,7 @@ class _Tables:
         if self.problems.unusable():
             return None  # the partition's labels cannot be read
         made = read_reference(rows, plan, plan.reference, self.problems)
+        self.files.notes += unmet_groups(plan.name, plan.reference, made.data)
         self._needed(plan, len(rows), self.reference, "reference")
         return made
 

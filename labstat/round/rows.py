@@ -14,6 +14,9 @@ from labstat.round.schema import FileKeys
 from labstat.round.shape import WRONG_WIDTH, fitted, wrong_width
 
 NO_ANALYTE = "(no analyte)"
+MORE_ANALYTES = "(more unknown analytes)"
+MOST_STRAY = 20
+"""More unknown names than this are told together: a column mapped wrongly must not make an analyte of every row."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -65,6 +68,7 @@ class Sheets:
         self.tables: list[Table] = []
         self._by_analyte: dict[str, list[Row]] = {}
         ignored: dict[str, int] = {}
+        strays: set[str] = set()
         for keys in files:
             grid = folder.grid_of(keys, asked_by)
             if grid is None:
@@ -87,7 +91,9 @@ class Sheets:
                 elif ignore_others and name != NO_ANALYTE:
                     ignored[name] = ignored.get(name, 0) + 1
                 else:
-                    _stray(row, name, analytes, problems)
+                    if len(strays) < MOST_STRAY:
+                        strays.add(name)
+                    _stray(row, name, analytes, problems, told_as=name if name in strays else MORE_ANALYTES)
         for name, number in ignored.items():
             folder.notes.append(f'{asked_by}: {number} rows of "{name}" ignored: the plan does not name it')
 
@@ -114,14 +120,14 @@ def _rows(table: Table, problems: Problems) -> Iterator[Row]:
             yield Row(table, line, row)
 
 
-def _stray(row: Row, name: str, analytes: Mapping[str, AnalytePlan], problems: Problems) -> None:
+def _stray(row: Row, name: str, analytes: Mapping[str, AnalytePlan], problems: Problems, *, told_as: str) -> None:
     if name == NO_ANALYTE:
         what, remedy, value = "the row names no analyte", "name it, or remove the row", ""
     else:
         what = f"the plan does not know this analyte{did_you_mean(name, analytes)}"
         remedy = 'correct the name, add [[analyte]], or set other_analytes = "ignore" in [files]'
         value = name
-    problems.add(row.table.file, row.line, row.table.header("analyte"), value, what, remedy, analyte=name)
+    problems.add(row.table.file, row.line, row.table.header("analyte"), value, what, remedy, analyte=told_as)
 
 
 def required_text(row: Row, name: str, problems: Problems, *, analyte: str) -> str:

@@ -7,7 +7,6 @@ import zipfile
 from datetime import date, datetime, time
 
 import openpyxl
-from openpyxl.utils.exceptions import InvalidFileException
 
 from labstat.round.grid import Grid, UnreadableError
 
@@ -17,48 +16,75 @@ LARGEST = 200_000_000
 RATIO = 300
 """An archive packed tighter than this is refused: no sheet of results is."""
 
-COLUMNS, ROWS = 500, 1_100_000
+COLUMNS, ROWS = 500, 1_048_576
+"""Columns that a table may have, and rows that a sheet can have."""
+
+SAVE_AGAIN = "save it again as XLSX or CSV"
+Shown = list[tuple[int, tuple[object, ...]]]
 
 
 def read_workbook(file: str, data: bytes, *, sheet: str | None, decimal: str) -> Grid:
-    """The rows of one sheet (the first, unless named), numbers with the decimal mark that its texts have.
+    """The rows of one sheet (the only one, unless named), numbers with the decimal mark that its texts have.
 
     Raises :class:`UnreadableError`.
     """
     _guard(data)
     try:
-        values = openpyxl.load_workbook(io.BytesIO(data), read_only=True, data_only=True)
-        formulas = openpyxl.load_workbook(io.BytesIO(data), read_only=True, data_only=False)
-    except (InvalidFileException, KeyError, ValueError, OSError, zipfile.BadZipFile) as error:
-        raise UnreadableError(None, f"is no readable workbook ({error})", "save it again as XLSX or CSV") from None
-    name = sheet if sheet is not None else values.sheetnames[0]
-    if name not in values.sheetnames:
-        raise UnreadableError(None, f'has no sheet "{name}"', f"name one of: {', '.join(values.sheetnames)}")
+        name, shown, formula = _rows(data, sheet)
+    except UnreadableError:
+        raise
+    except Exception as error:  # what a broken or hostile archive raises is not documented, and must end in a message
+        raise UnreadableError(None, f"is no readable workbook ({error})", SAVE_AGAIN) from None
+    if formula is not None:
+        raise UnreadableError(
+            formula[0], f"column {formula[1]} holds a formula without a stored value",
+            "open the workbook, let it calculate and save it again",
+        )
     rows: list[tuple[int, list[str]]] = []
-    width = 0
-    pairs = zip(
-        values[name].iter_rows(max_col=COLUMNS, max_row=ROWS, values_only=True),
-        formulas[name].iter_rows(max_col=COLUMNS, max_row=ROWS, values_only=True),
-        strict=False,
-    )
-    for line, (shown, written) in enumerate(pairs, 1):
-        cells = [_text(value) for value in shown]
-        for index, (value, formula) in enumerate(zip(shown, written, strict=False)):
-            if value is None and isinstance(formula, str) and formula.startswith("="):
-                raise UnreadableError(
-                    line, f"column {index + 1} holds a formula without a stored value",
-                    "open the workbook, let it calculate and save it again",
-                )
-        if any(cell.strip() for cell in cells):
+    for line, row in shown:
+        cells = [_text(value, decimal) for value in row]
+        while cells and not cells[-1].strip():
+            cells.pop()
+        if len(cells) > COLUMNS:
+            raise UnreadableError(line, f"has {len(cells)} columns, more than {COLUMNS}", "export the table as CSV")
+        if cells:
             rows.append((line, cells))
-            width = max(width, max(i for i, cell in enumerate(cells) if cell.strip()) + 1)
-    values.close()
-    formulas.close()
     if not rows:
         raise UnreadableError(None, f'sheet "{name}" is empty', "name the sheet that holds the table")
-    padded = [(line, (cells + [""] * width)[:width]) for line, cells in rows]
-    first, header = padded[0]
-    return Grid(file, tuple(cell.strip() for cell in header), first, padded[1:], "", typed=True)
+    first, header = rows[0]
+    width = len(header)
+    # a sheet has no ragged rows: blank cells at the end of a row are not stored; cells beyond the header stay
+    padded = [(line, cells + [""] * (width - len(cells))) for line, cells in rows[1:]]
+    return Grid(file, tuple(cell.strip() for cell in header), first, padded, "", typed=True)
+
+
+def _rows(data: bytes, sheet: str | None) -> tuple[str, Shown, tuple[int, int] | None]:
+    """The sheet's name, its rows as shown, and line and column of the first formula without a stored value."""
+    values = openpyxl.load_workbook(io.BytesIO(data), read_only=True, data_only=True)
+    formulas = openpyxl.load_workbook(io.BytesIO(data), read_only=True, data_only=False)
+    names = [each.title for each in values.worksheets]
+    if sheet is None and len(names) > 1:
+        raise UnreadableError(None, f"has {len(names)} sheets", f"set sheet to one of: {', '.join(names)}")
+    name = names[0] if sheet is None else sheet
+    if name not in names:
+        raise UnreadableError(None, f'has no sheet "{name}"', f"set sheet to one of: {', '.join(names)}")
+    for book in (values, formulas):
+        book[name].reset_dimensions()  # what the file says of its size need not be true
+    shown: Shown = []
+    pairs = zip(
+        values[name].iter_rows(max_row=ROWS, values_only=True),
+        formulas[name].iter_rows(max_row=ROWS, values_only=True),
+        strict=True,
+    )
+    for line, (row, written) in enumerate(pairs, 1):
+        shown.append((line, row))
+        if None in row:
+            for column, (value, formula) in enumerate(zip(row, written, strict=True), 1):
+                if value is None and isinstance(formula, str) and formula.startswith("="):
+                    return name, shown, (line, column)
+    values.close()
+    formulas.close()
+    return name, shown, None
 
 
 def _guard(data: bytes) -> None:
@@ -67,22 +93,21 @@ def _guard(data: bytes) -> None:
             unpacked = sum(entry.file_size for entry in archive.infolist())
             packed = max(1, sum(entry.compress_size for entry in archive.infolist()))
     except (zipfile.BadZipFile, OSError, ValueError) as error:
-        raise UnreadableError(
-            None, f"is no readable workbook ({error})", "save it again as XLSX or CSV"
-        ) from None
+        raise UnreadableError(None, f"is no readable workbook ({error})", SAVE_AGAIN) from None
     if unpacked > LARGEST or unpacked / packed > RATIO:
         raise UnreadableError(
             None, f"unpacks to {unpacked} bytes, more than a sheet of results would", "export the table as CSV"
         )
 
 
-def _text(value: object) -> str:
+def _text(value: object, decimal: str) -> str:
     if value is None:
         return ""
     if isinstance(value, bool):
         return "TRUE" if value else "FALSE"
-    if isinstance(value, float) and value.is_integer() and abs(value) < 1e15:
-        return str(int(value))
+    if isinstance(value, float):
+        whole = value.is_integer() and abs(value) < 1e15
+        return str(int(value)) if whole else repr(value).replace(".", decimal)
     if isinstance(value, datetime):
         return value.date().isoformat() if value.time() == time() else value.isoformat()
     if isinstance(value, date):
