@@ -10,10 +10,10 @@ import numpy as np
 import numpy.typing as npt
 from scipy import stats
 
+from labstat.checking import checked_resamples, checked_seed, checked_share
 from labstat.comparison.moments import Moments
-from labstat.comparison.pairs import checked_pairs, checked_share, cluster_members
+from labstat.comparison.pairs import checked_pairs, cluster_members
 from labstat.comparison.results import Array, Difference
-from labstat.comparison.scalars import checked_resamples, checked_seed
 from labstat.errors import ArgumentError, NotComputableError
 from labstat.resample.counts import Counts
 from labstat.resample.engine import Statistic, bootstrap, by_cluster

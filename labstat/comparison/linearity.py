@@ -8,9 +8,9 @@ import numpy as np
 import numpy.typing as npt
 from scipy import special
 
+from labstat.checking import checked_number
 from labstat.comparison.pairs import checked_pairs
 from labstat.comparison.results import Linearity
-from labstat.comparison.scalars import checked_number
 
 ROUNDING = 1e-9  # of the scale of the data: closer than this is the same
 

@@ -8,11 +8,11 @@ from dataclasses import dataclass, replace
 import numpy as np
 import numpy.typing as npt
 
+from labstat.checking import checked_number, checked_resamples, checked_seed, checked_share, checked_values
 from labstat.comparison.moments import deming, ordinary
-from labstat.comparison.pairs import checked_pairs, checked_share, checked_values, cluster_members
+from labstat.comparison.pairs import checked_pairs, cluster_members
 from labstat.comparison.passing_bablok import RankInterval, pair_slopes, passing_bablok, rank_interval
 from labstat.comparison.results import Array, Band, Bias
-from labstat.comparison.scalars import checked_number, checked_resamples, checked_seed
 from labstat.comparison.weighted_deming import weighted_deming
 from labstat.errors import ArgumentError, NotComputableError
 from labstat.resample.engine import Draws, Sample, Statistic, bootstrap, by_cluster

@@ -9,9 +9,8 @@ import numpy as np
 import numpy.typing as npt
 from scipy import stats
 
-from labstat.comparison.pairs import checked_values
+from labstat.checking import checked_number, checked_values
 from labstat.comparison.results import Array
-from labstat.comparison.scalars import checked_number
 from labstat.errors import ArgumentError
 
 FEWEST = 10  # the SD of fewer values is itself uncertain by a quarter and more

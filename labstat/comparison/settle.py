@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 
-from labstat.comparison.scalars import checked_number
+from labstat.checking import checked_number
 from labstat.errors import ArgumentError
 
 MOST = 500  # beyond this a number would be read as a plan that no laboratory follows

@@ -6,9 +6,9 @@ import numpy as np
 import numpy.typing as npt
 from scipy import stats
 
+from labstat.checking import checked_number
 from labstat.comparison.pairs import checked_pairs
 from labstat.comparison.results import SideChange
-from labstat.comparison.scalars import checked_number
 
 LEVEL = 0.95
 

@@ -9,6 +9,7 @@ import numpy as np
 import numpy.typing as npt
 from scipy import stats
 
+from labstat.checking import checked_resamples, checked_seed, checked_share, checked_values, checked_whole
 from labstat.errors import ArgumentError, NotComputableError
 from labstat.reference.rank import rank_limit
 from labstat.reference.ranks import smallest_n
@@ -16,7 +17,6 @@ from labstat.reference.results import ReferenceLimits
 from labstat.reference.robust import robust_limits
 from labstat.resample.estimate import Estimate
 from labstat.resample.exact import place_of
-from labstat.resample.seeds import fresh_seed
 
 Array = npt.NDArray[np.float64]
 
@@ -56,22 +56,22 @@ def reference_limits(
     robust method does not exist. When not to use it: several populations in one sample (partition first), results of
     patients, decision limits set by a guideline.
     """
-    x = _checked(values)
+    x = checked_values("values", values)
     asked = _checked_probabilities(probabilities)
     for name, value, allowed in (("method", method, METHODS), ("interval", interval, INTERVALS)):
         if value not in allowed:
             raise ArgumentError(name, f"must be one of {', '.join(allowed)}", value)
     if method == "robust" and interval == "rank":
         raise ArgumentError("interval", "must be percentile or bca for robust limits", interval)
-    if isinstance(level, bool) or not 0.0 < level < 1.0:
-        raise ArgumentError("level", "must lie between 0 and 1", level)
-    if isinstance(resamples, bool) or not isinstance(resamples, (int, np.integer)) or resamples < 99:
-        raise ArgumentError("resamples", "must be a whole number of at least 99", resamples)
+    checked_share("level", level)
+    checked_resamples(resamples)
+    checked_whole("minimum_n", minimum_n, lowest=1)
+    used_seed = checked_seed(seed)
     if x.size < minimum_n:
         raise NotComputableError(f"no reference limits from {x.size} values: at least {minimum_n} are needed")
     made = limits_of_group(
         x, probabilities=asked, method=method, interval=interval, level=level, resamples=int(resamples),
-        seed=fresh_seed() if seed is None else int(seed), minimum_n=minimum_n,
+        seed=used_seed, minimum_n=minimum_n,
     )
     if made.failure is not None:
         raise NotComputableError(made.failure)
@@ -163,19 +163,6 @@ def _placed(
 
 def _values(n: int) -> str:
     return "1 value" if n == 1 else f"{n} values"
-
-
-def _checked(values: npt.ArrayLike) -> Array:
-    try:
-        x = np.array(values, dtype=np.float64)
-    except (TypeError, ValueError):
-        raise ArgumentError("values", "must hold numbers only", values) from None
-    if x.ndim != 1:
-        raise ArgumentError("values", "must be one-dimensional, but its shape is", x.shape)
-    if not np.all(np.isfinite(x)):
-        first = int(np.flatnonzero(~np.isfinite(x))[0])
-        raise ArgumentError("values", f"must hold finite numbers only, but at position {first} holds", float(x[first]))
-    return x
 
 
 def _checked_probabilities(probabilities: Sequence[float]) -> tuple[float, ...]:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 import re
 from dataclasses import dataclass
+from functools import lru_cache
 from typing import Literal
 
 _NUMBER = re.compile(r"[+-]?(?:\d+(?:\.\d*)?|\.\d+)(?:[eE][+-]?\d{1,3})?", re.ASCII)
@@ -64,6 +65,7 @@ def _why(words: str, decimal: str) -> str:
     return "not a number"
 
 
+@lru_cache(maxsize=100_000)
 def natural(name: str) -> tuple[tuple[int, int, str], ...]:
     """A sorting key by which specimen 2 comes before specimen 10, whatever the order of the rows."""
     parts = re.findall(r"\d+|\D+", name)

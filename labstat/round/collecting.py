@@ -2,10 +2,26 @@
 
 from __future__ import annotations
 
+import gc
+from collections.abc import Iterator
+from contextlib import contextmanager
+
 from labstat.round.model import Problem
 
 MOST = 50
 """More problems than this of one analyte in one file are counted, not listed."""
+
+
+@contextmanager
+def no_garbage_collection() -> Iterator[None]:
+    """Rows are many small objects that all stay: walking them again and again would take most of the time."""
+    before = gc.isenabled()
+    gc.disable()
+    try:
+        yield
+    finally:
+        if before:
+            gc.enable()
 
 
 class Problems:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, field
 from typing import Literal
@@ -43,7 +44,8 @@ class Measured:
 
     @property
     def mean(self) -> float:
-        return float(np.mean(self.values))
+        # exact before it is rounded, so that the order of the replicates cannot matter
+        return math.fsum(self.values) / len(self.numbers)
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import csv
-import gc
 import io
 from dataclasses import dataclass
 
@@ -44,9 +43,6 @@ def read_text_table(file: str, text: str, *, delimiter: str | None) -> Grid:
         raise UnreadableError(None, f"cannot be split at {used!r}", 'set delimiter to ",", ";", "|" or a tab')
     reader = csv.reader(io.StringIO(text, newline=""), delimiter=used, strict=True)
     rows: list[tuple[int, list[str]]] = []
-    # a million small lists make the garbage collector walk them all again and again
-    collecting = gc.isenabled()
-    gc.disable()
     try:
         start = 1
         for row in reader:
@@ -57,9 +53,6 @@ def read_text_table(file: str, text: str, *, delimiter: str | None) -> Grid:
         raise UnreadableError(
             reader.line_num, f"is not well-formed CSV ({error})", "close the quotation mark or export the file again"
         ) from None
-    finally:
-        if collecting:
-            gc.enable()
     if not rows:
         raise UnreadableError(None, "is empty", "export it again with a header row")
     line, header = rows[0]

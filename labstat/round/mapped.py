@@ -45,7 +45,9 @@ class Table:
     def text(self, row: Sequence[str], name: str) -> str:
         """The cell of a row under one of our names; empty when the table has no such column."""
         at = self.index.get(name)
-        return row[at].strip() if at is not None else self.constants.get(name, "")
+        if at is not None:
+            return row[at].strip()
+        return self.constants.get(name, "") if self.constants else ""
 
     def header(self, name: str) -> str:
         """The header that the file itself has for one of our names."""

@@ -8,7 +8,7 @@ from typing import Any
 
 from labstat.errors import RoundError
 from labstat.round import schema
-from labstat.round.collecting import Problems
+from labstat.round.collecting import Problems, no_garbage_collection
 from labstat.round.comparison_rows import ComparisonRows, read_comparison
 from labstat.round.files import Folder, listed
 from labstat.round.model import AnalyteData, AnalytePlan, LeftOut, Round, RowCount
@@ -41,7 +41,8 @@ def read_round(folder: str | Path, *, only: Sequence[str] = ()) -> Round:
     plan, changed = made
     broken = bool(problems.unusable())
     chosen = _chosen(plan, only, problems)
-    data = _Tables(files, plan, problems).read(chosen)
+    with no_garbage_collection():
+        data = _Tables(files, plan, problems).read(chosen)
     if problems.unusable():
         # where the plan is broken, a row that does not fit it may be right: only rows of sound analytes are told
         sound = {analyte.name for analyte in plan.plan.analytes} - changed
