@@ -31,9 +31,9 @@ from labstat.round.model import (
     ReferencePlan,
     RoundPlan,
 )
-from labstat.study_comparison import compare
-from labstat.study_reference import reference_groups
-from labstat.study_results import ComparisonResult
+from labstat.study.comparison import compare
+from labstat.study.reference import reference_groups
+from labstat.study.results import ComparisonResult
 
 WIDE, HIGH = 265.0, 240.0
 PLAN = RoundPlan("t", "l", "p", "r", 1, 199, 0.95, 0.90, "A4", None, None, None, (), "", ())
@@ -171,12 +171,11 @@ def test_each_side_of_an_uneven_allowance_is_its_own_hundred_percent() -> None:
 
 def test_the_findings_can_be_told_apart_without_colour() -> None:
     drawn = {}
-    for word in ("within", "beyond", "unsettled"):
-        bar = share_bar(finding(-1.0, 1.0, 3.0, word), width=120, height=12)  # type: ignore[arg-type]
-        drawn[word] = [
-            (type(part).__name__, getattr(part, "fillColor", None) is not None
-             and part.fillColor.rgb() == (1, 1, 1)) for part in shapes(bar)
-        ]
+    every: tuple[FindingWord, ...] = ("within", "beyond", "unsettled")
+    for word in every:
+        bar = share_bar(finding(-1.0, 1.0, 3.0, word), width=120, height=12)
+        fills = [getattr(part, "fillColor", None) for part in shapes(bar)]
+        drawn[word] = [fill is not None and fill.rgb() == (1, 1, 1) for fill in fills]
     assert drawn["within"] != drawn["unsettled"] != drawn["beyond"] != drawn["within"]
 
 
