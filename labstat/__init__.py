@@ -11,9 +11,9 @@ __version__ = "0.1.0"
 
 if TYPE_CHECKING:
     from labstat.batch import RunReport, run_round
+    from labstat.batch.output import OutputError
     from labstat.comparison.lines import LineFit, fit_line
     from labstat.errors import ArgumentError, LabstatError, NotComputableError, RoundError
-    from labstat.output import OutputError
     from labstat.reference.limits import reference_limits
     from labstat.reference.results import ReferenceLimits
     from labstat.resample.estimate import Estimate
@@ -25,7 +25,7 @@ _HOMES = {
     "LabstatError": "labstat.errors",
     "LineFit": "labstat.comparison.lines",
     "NotComputableError": "labstat.errors",
-    "OutputError": "labstat.output",
+    "OutputError": "labstat.batch.output",
     "ReferenceLimits": "labstat.reference.results",
     "RoundError": "labstat.errors",
     "RunReport": "labstat.batch",

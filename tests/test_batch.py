@@ -11,9 +11,10 @@ import pytest
 from tiny_round import content, only_analyte, rows_of, write_round
 
 import labstat
-from labstat import analyte_job, batch
+from labstat import batch
+from labstat.batch import job as one_job
+from labstat.batch.output import OutputError
 from labstat.errors import ArgumentError, RoundError
-from labstat.output import OutputError
 
 
 @pytest.fixture(scope="module")
@@ -183,14 +184,14 @@ def test_a_run_that_fails_at_the_overview_leaves_the_previous_output(tmp_path, m
 
 def test_an_unexpected_error_in_one_analyte_costs_only_that_analyte(tmp_path, monkeypatch):
     folder = write_round(tmp_path / "round", {"K": rows_of("K"), "Na": rows_of("Na")})
-    compute = analyte_job.compute
+    compute = one_job.compute
 
     def breaks(data, plan):
         if data.plan.name == "K":
             raise ZeroDivisionError("division by zero")
         return compute(data, plan)
 
-    monkeypatch.setattr(analyte_job, "compute", breaks)
+    monkeypatch.setattr(one_job, "compute", breaks)
     report = labstat.run_round(folder, workers=1)
     assert report.exit_status == 1
     assert report.entries[0].reason == "unexpected ZeroDivisionError: division by zero"
@@ -201,7 +202,7 @@ def killed_at_k(job):
     """Stands in for the work on an analyte: K kills its worker."""
     if job.data.plan.name == "K":
         os.kill(os.getpid(), signal.SIGKILL)
-    return analyte_job.work(job)
+    return one_job.work(job)
 
 
 def test_a_killed_worker_names_its_analyte_and_the_others_are_computed(tmp_path, monkeypatch):

@@ -8,7 +8,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from labstat.names import report_names
+from labstat.batch.names import report_names
 
 
 @pytest.mark.parametrize("name", ["Creatinine", "γ-GT", "Hb A1c", "Natrium 140 mmol", "α₁-antitrypsin"])

@@ -8,7 +8,7 @@ from pathlib import Path
 
 import pytest
 
-from labstat.output import SUMS, OutputError, reserved
+from labstat.batch.output import SUMS, OutputError, reserved
 
 FILES = {"results.json": b'{"format": "labstat results 1"}\n', "reports/A.pdf": b"%PDF", "tables/bias.csv": b"at\r\n"}
 

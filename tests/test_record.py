@@ -18,11 +18,11 @@ from studies import ROUND, bias, comparison, estimate, group, level, limit, line
 
 from labstat.judgement import judge
 from labstat.record import analyte_record, as_bytes, failed_record, round_record, stray_record
-from labstat.record_tables import tables
-from labstat.record_values import estimate_record
+from labstat.record.tables import tables
+from labstat.record.values import estimate_record
+from labstat.record.versions import versions
 from labstat.report.model import RunContext
 from labstat.round.model import Approval, InputFile, LeftOut, Problem, RowCount
-from labstat.versions import versions
 
 CONTEXT = RunContext(ROUND, (InputFile("comparison.csv", "ab" * 32),), versions(), 7, 999, ("read as cp1252",))
 EST = [

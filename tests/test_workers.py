@@ -12,7 +12,7 @@ import time
 import numpy as np
 import pytest
 
-from labstat.workers import DIED, ONE_THREAD, run_all
+from labstat.batch.workers import DIED, ONE_THREAD, run_all
 
 
 def square(job: int) -> int:

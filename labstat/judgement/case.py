@@ -9,7 +9,7 @@ from labstat.judgement.findings import Question
 from labstat.judgement.model import Caution, Finding
 from labstat.judgement.scene import ComparisonScene, GroupScene
 from labstat.judgement.wording import listing, plain, with_unit
-from labstat.study_results import NotComputed, StudyResult
+from labstat.study.results import NotComputed, StudyResult
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -21,7 +21,7 @@ from labstat.judgement.scene import (
     S,
 )
 from labstat.round.model import RoundPlan
-from labstat.study_results import StudyResult
+from labstat.study.results import StudyResult
 
 ORDER: dict[Weight, int] = {"stop": 0, "caution": 1, "note": 2}
 

@@ -10,7 +10,7 @@ from labstat.comparison.results import Bias
 from labstat.comparison.settle import settling_n
 from labstat.judgement.model import Finding, FindingWord
 from labstat.judgement.wording import listing, plain, some, with_unit
-from labstat.study_results import BiasAtLevel, ComparisonResult, StudyResult
+from labstat.study.results import BiasAtLevel, ComparisonResult, StudyResult
 
 FEWEST_NEAR = 5
 """Specimens within 25 % of a level below which nothing counts as within (common practice, no source)."""

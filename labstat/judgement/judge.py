@@ -9,7 +9,7 @@ from labstat.judgement.model import Finding, Judgement
 from labstat.judgement.proposal import proposal, situation
 from labstat.judgement.rules_comparison import stopped
 from labstat.round.model import AnalytePlan, RoundPlan
-from labstat.study_results import StudyResult
+from labstat.study.results import StudyResult
 
 EXAMINED_BESIDE: tuple[str, ...] = (
     "linearity", "limit of quantitation", "interference", "carry-over", "stability", "precision", "total error",

@@ -7,7 +7,7 @@ from collections.abc import Iterable
 from labstat.judgement.rules_reference import limits_of, undercovers
 from labstat.judgement.scene import GroupScene
 from labstat.judgement.wording import listing, percent, some
-from labstat.study_results import NotComputed
+from labstat.study.results import NotComputed
 
 
 def reference_sentence(scenes: tuple[GroupScene, ...], missing: Iterable[NotComputed]) -> str | None:

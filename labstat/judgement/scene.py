@@ -10,7 +10,7 @@ from labstat.judgement.findings import Question
 from labstat.judgement.model import Weight
 from labstat.judgement.wording import group_name, number, with_unit
 from labstat.round.model import AnalytePlan, ComparisonPlan, ReferencePlan, RoundPlan
-from labstat.study_results import ComparisonResult, GroupResult, StudyResult
+from labstat.study.results import ComparisonResult, GroupResult, StudyResult
 
 BIAS = "bias"
 LIMITS = "reference limits"

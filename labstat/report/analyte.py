@@ -13,7 +13,7 @@ from labstat.report.page_evidence import caution_pages, method_pages, row_pages
 from labstat.report.page_one import leading_comparison, page_one
 from labstat.report.page_reference import reference_pages
 from labstat.report.styles import text
-from labstat.study_results import StudyResult
+from labstat.study.results import StudyResult
 
 
 def analyte_report(study: StudyResult, judgement: Judgement, context: RunContext) -> bytes:

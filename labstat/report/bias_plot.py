@@ -11,7 +11,7 @@ from labstat.report.fonts import register
 from labstat.report.numbers import plain
 from labstat.report.plot_parts import KeyEntry, key, with_unit
 from labstat.round.model import AnalytePlan
-from labstat.study_results import BiasAtLevel, ComparisonResult
+from labstat.study.results import BiasAtLevel, ComparisonResult
 
 
 def bias_plot(result: ComparisonResult, analyte: AnalytePlan, *, width: float, height: float) -> Drawing:

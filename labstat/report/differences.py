@@ -9,7 +9,7 @@ from labstat.report.axes import ACCENT, INK, SHADE, SOFT, Axes, linear_scale, lo
 from labstat.report.fonts import register
 from labstat.report.plot_parts import KeyEntry, key, level_marks, specimen_names, wide_range, with_unit
 from labstat.round.model import AnalytePlan
-from labstat.study_results import ComparisonResult
+from labstat.study.results import ComparisonResult
 
 
 def difference_plot(result: ComparisonResult, analyte: AnalytePlan, *, width: float, height: float) -> Drawing:

@@ -13,7 +13,7 @@ from labstat.report.styles import SECTION, SMALL, beside, bold_lead, table, text
 from labstat.report.words import INTERVALS, METHODS, bias_decimals, how, with_interval
 from labstat.resample.estimate import Estimate
 from labstat.round.model import AnalytePlan
-from labstat.study_results import BiasAtLevel, ComparisonResult
+from labstat.study.results import BiasAtLevel, ComparisonResult
 
 MOST_LISTED = 12
 

@@ -11,7 +11,7 @@ from labstat.report.numbers import percent, plain
 from labstat.report.styles import SECTION, bold_lead, table, text
 from labstat.report.words import METHODS
 from labstat.round.model import AnalytePlan
-from labstat.study_results import StudyResult
+from labstat.study.results import StudyResult
 
 WEIGHTS = ("stop", "caution", "note")
 

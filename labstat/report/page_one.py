@@ -30,7 +30,7 @@ from labstat.report.styles import (
     text,
 )
 from labstat.report.words import INTERVALS, allowed, bias_decimals, count, finding_number, quoted, with_interval
-from labstat.study_results import ComparisonResult, GroupResult, StudyResult
+from labstat.study.results import ComparisonResult, GroupResult, StudyResult
 
 ROWS = (9, 7, 6, 5, 4, 3)
 """Questions tried to show on page one, so that the decision stays on it; all are in the tables that follow."""

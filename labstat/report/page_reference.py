@@ -9,7 +9,7 @@ from labstat.report.numbers import percent, plain, span
 from labstat.report.reference_plot import MOST, group_words, reference_plot
 from labstat.report.styles import SECTION, bold_lead, table, text
 from labstat.report.words import INTERVALS, LIMITS, how, with_interval
-from labstat.study_results import GroupResult, StudyResult
+from labstat.study.results import GroupResult, StudyResult
 
 
 def reference_pages(study: StudyResult, *, wide: float, level: float) -> list[Flowable]:

@@ -10,7 +10,7 @@ from reportlab.lib.colors import Color, white
 from labstat.report.axes import SOFT, Axes, put_line, put_rect, put_text
 from labstat.report.fonts import shown, width
 from labstat.report.numbers import plain
-from labstat.study_results import ComparisonResult
+from labstat.study.results import ComparisonResult
 
 LOG_FROM = 30.0
 """Specimens whose highest result is this many times the lowest are drawn on logarithmic scales."""

@@ -15,7 +15,7 @@ from labstat.report.fonts import width as text_width
 from labstat.report.plot_parts import KeyEntry, key, with_unit
 from labstat.report.words import quoted
 from labstat.round.model import AnalytePlan
-from labstat.study_results import GroupResult
+from labstat.study.results import GroupResult
 
 MOST = 4
 """Groups drawn in one figure; more are named in the caption and stand in the table."""

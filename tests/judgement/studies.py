@@ -24,7 +24,7 @@ from labstat.round.model import (
     RoundPlan,
     RowCount,
 )
-from labstat.study_results import BiasAtLevel, ComparisonResult, GroupResult, StudyResult
+from labstat.study.results import BiasAtLevel, ComparisonResult, GroupResult, StudyResult
 
 ROUND = RoundPlan(
     title="Chemistry",

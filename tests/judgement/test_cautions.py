@@ -11,7 +11,7 @@ from labstat.comparison.results import Linearity, SideChange, WithoutUnit
 from labstat.judgement import judge
 from labstat.reference.results import OutsideCount
 from labstat.round.model import Adopted, Approval, LeftOut, RowCount
-from labstat.study_results import NotComputed, Outlier
+from labstat.study.results import NotComputed, Outlier
 
 CLEAN = study(comparison(level(), level(at=250.0)), groups=(group(), group(sex="M")))
 OUTLIER = (Outlier("0417", 100.0, 130.0, 30.0, 5.0, 3.0),)

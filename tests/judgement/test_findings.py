@@ -13,7 +13,7 @@ from studies import ROUND, bias, comparison, level, study
 from labstat.comparison.results import WithoutUnit
 from labstat.judgement import judge
 from labstat.judgement.findings import compare
-from labstat.study_results import Outlier
+from labstat.study.results import Outlier
 
 
 def finding(*levels, **more):

@@ -11,7 +11,7 @@ from labstat.comparison.results import WithoutUnit
 from labstat.judgement import judge
 from labstat.judgement.wording import decimals_that_tell, number, signed
 from labstat.round.model import Elsewhere
-from labstat.study_results import NotComputed
+from labstat.study.results import NotComputed
 
 BEYOND = {"value": 14.0, "low": 11.0, "high": 17.0}
 UNSETTLED = {"value": 5.0, "low": -1.0, "high": 11.0}

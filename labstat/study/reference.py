@@ -9,7 +9,7 @@ from labstat.reference.adopted import outside_interval
 from labstat.reference.limits import limits_of_group
 from labstat.resample.seeds import derived_seed
 from labstat.round.model import Adopted, AnalyteData, ReferenceData, ReferencePlan, RoundPlan
-from labstat.study_results import GroupResult, NotComputed
+from labstat.study.results import GroupResult, NotComputed
 
 Group = tuple[tuple[str, str], ...]
 

@@ -13,11 +13,11 @@ from typing import Any
 from labstat.comparison.lines import LineFit
 from labstat.comparison.results import Bias, Difference
 from labstat.judgement.model import Finding, Judgement
-from labstat.record_reference import group_record
-from labstat.record_values import Json, estimate_record, floating, plain_text
+from labstat.record.reference import group_record
+from labstat.record.values import Json, estimate_record, floating, plain_text
 from labstat.report.model import RunContext
 from labstat.round.model import AnalyteData, Approval, LeftOut, Problem, RowCount
-from labstat.study_results import BiasAtLevel, ComparisonResult, StudyResult
+from labstat.study.results import BiasAtLevel, ComparisonResult, StudyResult
 
 FORMAT = "labstat results 1"
 STUDIES = ("comparison", "reference", "precision")

@@ -7,18 +7,18 @@ from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
 from pathlib import Path
 
-from labstat.analyte_job import Job, Outcome, failed_outcome, stray_outcome, work
+from labstat.batch.job import Job, Outcome, failed_outcome, stray_outcome, work
+from labstat.batch.names import report_names
+from labstat.batch.output import reserved
+from labstat.batch.workers import run_all
 from labstat.errors import ArgumentError
-from labstat.names import report_names
-from labstat.output import reserved
 from labstat.record import as_bytes, round_record
-from labstat.record_tables import tables
+from labstat.record.tables import tables
+from labstat.record.versions import versions
 from labstat.report.model import OverviewEntry, RunContext
 from labstat.report.overview import overview_report
 from labstat.round.model import Problem, Round
 from labstat.round.reading import read_round
-from labstat.versions import versions
-from labstat.workers import run_all
 
 Progress = Callable[[str, int, int], None]
 """Told the analyte that has ended, how many have, and how many there are."""
@@ -61,7 +61,7 @@ def run_round(
     same for any number. ``seed`` and ``resamples`` stand in for the plan's.
 
     Raises :class:`~labstat.errors.RoundError` when the plan or a file cannot be used (nothing is computed or written),
-    :class:`~labstat.output.OutputError` when the output cannot be written there, and
+    :class:`~labstat.batch.output.OutputError` when the output cannot be written there, and
     :class:`~labstat.errors.ArgumentError` for an argument that breaks its rule. An analyte that cannot be computed
     raises nothing: it is named in the result.
     """
@@ -121,7 +121,7 @@ def _outcomes(
 
     outcomes = run_all(
         work, jobs, workers=_workers(workers, len(jobs)), failed=failed_outcome, done=done,
-        preload=["labstat.analyte_job"],
+        preload=["labstat.batch.job"],
     )
     return outcomes + [stray_outcome(name, read.stray[name]) for name in sorted(read.stray)]
 

@@ -19,7 +19,7 @@ from labstat.resample.influence import bounds_without_each
 from labstat.resample.intervals import tails
 from labstat.resample.seeds import derived_seed
 from labstat.round.model import AnalytePlan, CensoredPair, ComparisonData, ComparisonPlan, Level, RoundPlan
-from labstat.study_results import BiasAtLevel, ComparisonResult, NotComputed, Outlier
+from labstat.study.results import BiasAtLevel, ComparisonResult, NotComputed, Outlier
 
 NEAR = 0.25
 """Specimens within this share of a level speak for it (common practice, no source)."""

@@ -2,10 +2,10 @@
 
 from __future__ import annotations
 
-from labstat.record_values import Json, estimate_record, floating
+from labstat.record.values import Json, estimate_record, floating
 from labstat.reference.results import OutsideCount
 from labstat.round.model import Adopted
-from labstat.study_results import GroupResult
+from labstat.study.results import GroupResult
 
 
 def group_record(group: GroupResult) -> Json:

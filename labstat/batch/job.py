@@ -9,12 +9,12 @@ from labstat.errors import LabstatError
 from labstat.judgement import Judgement, judge
 from labstat.judgement.wording import group_name
 from labstat.record import analyte_record, failed_record, stray_record
-from labstat.record_values import Json
+from labstat.record.values import Json
 from labstat.report.analyte import analyte_report
 from labstat.report.model import OverviewEntry, RunContext
 from labstat.round.model import AnalyteData, Problem
 from labstat.study import compute
-from labstat.study_results import StudyResult
+from labstat.study.results import StudyResult
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -3,9 +3,9 @@
 from __future__ import annotations
 
 from labstat.round.model import AnalyteData, RoundPlan
-from labstat.study_comparison import compare
-from labstat.study_reference import reference_groups
-from labstat.study_results import ComparisonResult, NotComputed, StudyResult
+from labstat.study.comparison import compare
+from labstat.study.reference import reference_groups
+from labstat.study.results import ComparisonResult, NotComputed, StudyResult
 
 
 def compute(data: AnalyteData, plan: RoundPlan) -> StudyResult:

@@ -7,7 +7,7 @@ import io
 from collections.abc import Iterable, Iterator, Sequence
 from typing import Any
 
-from labstat.record_values import Json, plain_text
+from labstat.record.values import Json, plain_text
 
 Cell = str | int | float | None
 

@@ -17,8 +17,8 @@ from contextlib import contextmanager, suppress
 from dataclasses import dataclass
 from pathlib import Path
 
+from labstat.batch.locking import Locked, locked
 from labstat.errors import LabstatError
-from labstat.locking import Locked, locked
 
 SUMS = "SHA256SUMS"
 _MARK = "labstat results"
