@@ -45,17 +45,22 @@ def read_result(text: str, *, decimal: str) -> Result:
         if words.startswith(sign):
             bound = read_number(words[len(sign) :], decimal=decimal)
             if bound is None:
-                return Result("bad", what="no number after the sign", remedy="write it like <0.5 or >1000")
+                rest = words[len(sign) :].strip()
+                what = "no number after the sign"
+                if read_number(rest, decimal="," if decimal == "." else ".") is not None:
+                    what = why_not(rest, decimal)
+                return Result("bad", what=what, remedy="write it like <0.5 or >1000")
             side: Literal["below", "above"] = "below" if _SIGNS[sign] == "below" else "above"
             return Result("censored", bound, side)
     value = read_number(words, decimal=decimal)
     if value is not None:
         return Result("number", value)
     remedy = "correct it, leave it empty, or give the row an exclude reason"
-    return Result("bad", what=_why(words, decimal), remedy=remedy)
+    return Result("bad", what=why_not(words, decimal), remedy=remedy)
 
 
-def _why(words: str, decimal: str) -> str:
+def why_not(words: str, decimal: str) -> str:
+    """Why a text is no number."""
     other = "," if decimal == "." else "."
     if other in words and read_number(words, decimal=other) is not None:
         return (

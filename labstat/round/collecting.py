@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import gc
+import math
 from collections.abc import Iterator
 from contextlib import contextmanager
 
@@ -10,6 +11,11 @@ from labstat.round.model import Problem
 
 MOST = 50
 """More problems than this of one analyte in one file are counted, not listed."""
+
+
+def _place(problem: Problem) -> tuple[str, float]:
+    """By file and line; what concerns no line comes last."""
+    return problem.file, math.inf if problem.line is None else problem.line
 
 
 @contextmanager
@@ -56,7 +62,7 @@ class Problems:
         for problem in self._all():
             if problem.analyte is not None:
                 found.setdefault(problem.analyte, []).append(problem)
-        return {analyte: tuple(listed) for analyte, listed in found.items()}
+        return {analyte: tuple(sorted(listed, key=_place)) for analyte, listed in found.items()}
 
     def all(self) -> tuple[Problem, ...]:
         """Everything, those that make the round unusable first."""

@@ -11,10 +11,13 @@ from labstat.round.grid import Grid
 from labstat.round.naming import clean_name, did_you_mean
 from labstat.round.schema import FileKeys
 
+NUMBERS = ("result", "at", "low", "high")
+"""Our columns whose cells tell the decimal mark."""
+
 _COMMA = re.compile(r"[<>≤≥=\s]*[+\u2212-]?\d*,\d+\s*")
 _DOT = re.compile(r"[<>≤≥=\s]*[+\u2212-]?\d*\.\d+\s*")
 _WHOLE = re.compile(r"[<>≤≥=\s]*[+\u2212-]?\d+\s*")
-THOUSANDS = re.compile(r"[<>≤≥=\s]*[+\u2212-]?[1-9]\d{0,2}[.,]\d{3}\s*")
+_THOUSANDS = re.compile(r"[<>≤≥=\s]*[+\u2212-]?[1-9]\d{0,2}[.,]\d{3}\s*")
 
 
 @dataclass(frozen=True, slots=True)
@@ -91,7 +94,9 @@ def mapped(
     for name in keys.constants:
         if name not in known and not open_ended:
             problems.add("round.toml", None, "files.constants", name, "is no column of ours", f"use {', '.join(known)}")
-    decimal = _decimal(grid, keys, [index["result"]] if "result" in index else [w.index for w in wide], problems)
+    decimal = _decimal(
+        grid, keys, [index[name] for name in NUMBERS if name in index] or [w.index for w in wide], problems
+    )
     if len(problems.unusable()) > before or decimal is None:
         return None
     used = {*index.values(), *(w.index for w in wide)}
@@ -137,7 +142,7 @@ def _decimal(grid: Grid, keys: FileKeys, columns: Iterable[int], problems: Probl
     commas = [cell for cell in cells if _COMMA.fullmatch(cell)]
     dots = [cell for cell in cells if _DOT.fullmatch(cell)]
     marked, mark = (commas, ",") if len(commas) > len(dots) else (dots, ".")
-    if marked and all(THOUSANDS.fullmatch(cell) for cell in marked):
+    if marked and all(_THOUSANDS.fullmatch(cell) for cell in marked):
         whole = any(_WHOLE.fullmatch(cell) for cell in cells)
         # a dot is a decimal mark where nothing speaks against it; whole numbers, or a delimiter of the lands that write
         # the comma, do

@@ -65,13 +65,13 @@ def _walk(raw: Any, loc: tuple[int | str, ...], *, missing: bool) -> tuple[Path,
 
 
 def _fits(value: Any, alternative: str) -> bool:
-    if alternative == "str":
+    if alternative in ("str", "constrained-str"):
         return isinstance(value, str)
     if alternative == "FileKeys":
         return isinstance(value, dict)
     if alternative.startswith("list["):
         return isinstance(value, list)
-    if alternative == "float":
+    if alternative in ("float", "constrained-float"):
         return isinstance(value, (int, float)) and not isinstance(value, bool)
     if alternative.startswith("literal["):
         return isinstance(value, str)
@@ -100,8 +100,11 @@ def _mend(plan: dict[str, Any], path: Path) -> None:
         plan["round"] = {}
         return
     place: Any = plan
-    for part in path[:-1]:
-        place = place[part]
+    try:
+        for part in path[:-1]:
+            place = place[part]
+    except (KeyError, IndexError):
+        return  # what held it has been left out already
     last: Any = path[-1]
     required = path[0] == "round" or (path[0] == "analyte" and len(path) in (3, 4))
     if required and isinstance(last, str) and last in _STAND_INS and len(path) != 1:

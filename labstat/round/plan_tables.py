@@ -7,10 +7,10 @@ from typing import Any
 from pydantic import ValidationError
 
 from labstat.round import schema
-from labstat.round.cells import read_number
+from labstat.round.cells import read_number, why_not
 from labstat.round.collecting import Problems
 from labstat.round.files import Folder
-from labstat.round.mapped import THOUSANDS, Table, mapped
+from labstat.round.mapped import Table, mapped
 from labstat.round.naming import clean_name, did_you_mean
 from labstat.round.planning import Origin
 from labstat.round.rows import Columns
@@ -129,10 +129,6 @@ def read_analytes(
 def _number(table: Table, line: int, row: list[str], name: str, problems: Problems) -> float | None:
     text = table.text(row, name)
     value = read_number(text, decimal=table.decimal)
-    if value is None and table.decimal == ".":
-        # a level may be written with the decimal mark of the rest of the export
-        doubtful = table.grid.delimiter == "," or THOUSANDS.fullmatch(text)
-        value = None if doubtful else read_number(text, decimal=",")
     if value is None:
-        problems.add(table.file, line, table.header(name), text, "not a number", "correct it")
+        problems.add(table.file, line, table.header(name), text, why_not(text, table.decimal), "correct it")
     return value

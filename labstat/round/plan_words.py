@@ -48,9 +48,11 @@ def in_words(path: Path, item: Any) -> tuple[str, str]:
         "finite_number": "must be a finite number", "date_type": "must be a date or text",
         "bool_type": "must be true or false",
     }
+    if kind == "string_too_short":
+        return "is blank", "fill it in, or leave the key out"
     if kind in names:
-        return names[kind], "correct the value"
-    said = cast("str", item["msg"]).replace("Input should", "should").replace("Value should", "should")
+        return names[kind], "write it in quotes" if kind == "string_type" else "correct the value"
+    said = cast("str", item["msg"]).replace("Input should", "must").replace("Value should", "must")
     return said, "correct the value"
 
 

@@ -3,7 +3,9 @@
 from __future__ import annotations
 
 import io
+import re
 import zipfile
+import zlib
 from datetime import date, datetime, time
 
 import openpyxl
@@ -19,6 +21,7 @@ RATIO = 300
 COLUMNS, ROWS = 500, 1_048_576
 """Columns that a table may have, and rows that a sheet can have."""
 
+_ROW_NUMBER = re.compile(rb'<(?:\w+:)?row\b[^>]*?\sr="(\d+)"')
 SAVE_AGAIN = "save it again as XLSX or CSV"
 Shown = list[tuple[int, tuple[object, ...]]]
 
@@ -92,12 +95,25 @@ def _guard(data: bytes) -> None:
         with zipfile.ZipFile(io.BytesIO(data)) as archive:
             unpacked = sum(entry.file_size for entry in archive.infolist())
             packed = max(1, sum(entry.compress_size for entry in archive.infolist()))
-    except (zipfile.BadZipFile, OSError, ValueError) as error:
+            if unpacked <= LARGEST and unpacked / packed <= RATIO:
+                _guard_rows(archive)
+    except UnreadableError:
+        raise
+    except (zipfile.BadZipFile, OSError, ValueError, RuntimeError, zlib.error) as error:
         raise UnreadableError(None, f"is no readable workbook ({error})", SAVE_AGAIN) from None
     if unpacked > LARGEST or unpacked / packed > RATIO:
         raise UnreadableError(
             None, f"unpacks to {unpacked} bytes, more than a sheet of results would", "export the table as CSV"
         )
+
+
+def _guard_rows(archive: zipfile.ZipFile) -> None:
+    """A row with a number that no sheet has would end the reading early, without a word."""
+    for entry in archive.infolist():
+        if entry.filename.startswith("xl/worksheets/") and entry.filename.endswith(".xml"):
+            for match in _ROW_NUMBER.finditer(archive.read(entry)):
+                if int(match.group(1)[:9]) > ROWS:
+                    raise UnreadableError(None, "numbers a row that no sheet can have", SAVE_AGAIN)
 
 
 def _text(value: object, decimal: str) -> str:
