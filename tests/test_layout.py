@@ -27,8 +27,8 @@ ROOMS = {
     "report": {"report", "judgement", "study", "comparison", "reference", "precision", "resample", "round"},
     "record": {"record", "report", "judgement", "study", "comparison", "reference", "precision", "resample", "round"},
 }
-"""Which rooms a room may import from, beside what all share. The rooms not named here (the batch, the commands) stand at
-the right end and may import from everywhere."""
+"""Which rooms a room may import from, beside what all share. The rooms not named here (the batch, the commands) stand
+at the right end and may import from everywhere."""
 
 
 SHARED = {"errors", "checking"}

@@ -16,11 +16,11 @@ sys.path.insert(0, str(Path(__file__).parent / "judgement"))
 
 from studies import ROUND, bias, comparison, estimate, group, level, limit, line, study
 
+from labstat.batch.versions import versions
 from labstat.judgement import judge
 from labstat.record import analyte_record, as_bytes, failed_record, round_record, stray_record
 from labstat.record.tables import tables
 from labstat.record.values import estimate_record
-from labstat.record.versions import versions
 from labstat.report.model import RunContext
 from labstat.round.model import Approval, InputFile, LeftOut, Problem, RowCount
 

@@ -10,11 +10,11 @@ from pathlib import Path
 from labstat.batch.job import Job, Outcome, failed_outcome, stray_outcome, work
 from labstat.batch.names import report_names
 from labstat.batch.output import reserved
+from labstat.batch.versions import versions
 from labstat.batch.workers import run_all
 from labstat.errors import ArgumentError
 from labstat.record import as_bytes, round_record
 from labstat.record.tables import tables
-from labstat.record.versions import versions
 from labstat.report.model import OverviewEntry, RunContext
 from labstat.report.overview import overview_report
 from labstat.round.model import Problem, Round

@@ -81,8 +81,7 @@ def test_the_smallest_number_of_values_is_the_known_one() -> None:
 def test_a_bootstrap_interval_says_what_it_attains_in_simulation() -> None:
     """800 samples of 120 standard normals: the share that holds the true limit lies where the ranks say.
 
-    A bound may lie between two ranks; the coverage stated is that of the inner ranks, and the outer ones give a ceiling.
-
+    A bound may lie between two ranks; the coverage stated is that of the inner ranks, the outer ones give a ceiling.
     A share of 800 has a standard error of at most 0.0177; 4 of these: false alarm below 1e-4.
     """
     rng = np.random.default_rng(20261201)
