@@ -57,7 +57,7 @@ def documented_results() -> tuple[set[str], set[str]]:
         keys = {
             key
             for line in body.splitlines() if line.startswith("| `")
-            for key in re.findall(r"`([a-z_]+)`", line.split(" | ")[0])
+            for key in re.findall(r"`([a-z0-9_]+)`", line.split(" | ")[0])
         }
         if title == ESTIMATE:
             estimate |= keys
