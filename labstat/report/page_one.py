@@ -15,9 +15,9 @@ from labstat.report.numbers import number, percent, plain, signed
 from labstat.report.reference_plot import reference_plot
 from labstat.report.share_bar import share_axis, share_bar
 from labstat.report.styles import (
-    BODY,
     DANGER,
     HEAD,
+    LEFT,
     PROPOSAL,
     SECTION,
     SMALL,
@@ -99,7 +99,7 @@ def _head(study: StudyResult, context: RunContext, wide: float) -> list[Flowable
         context.plan.laboratory,
         context.plan.title,
     ]
-    left: list[Flowable] = [text(f"{plan.name} ({plan.unit})", TITLE), text("; ".join(parts), BODY)]
+    left: list[Flowable] = [text(f"{plan.name} ({plan.unit})", TITLE), text("; ".join(parts), LEFT)]
     return [beside(left, [text(fact, SMALL) for fact in facts], (wide * 0.66, wide * 0.34)), Spacer(0, 5)]
 
 

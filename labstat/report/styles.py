@@ -15,6 +15,7 @@ from labstat.report.fonts import BOLD, TEXT, markup
 TINT = Color(0.95, 0.96, 0.97)
 
 BODY = ParagraphStyle("body", fontName=TEXT, fontSize=8, leading=10.4, textColor=INK)
+LEFT = ParagraphStyle("left", parent=BODY, rightIndent=14)
 SMALL = ParagraphStyle("small", parent=BODY, fontSize=7, leading=9)
 RIGHT = ParagraphStyle("right", parent=SMALL, alignment=TA_RIGHT)
 HEAD = ParagraphStyle("head", parent=SMALL, fontName=BOLD)

@@ -33,10 +33,11 @@ def no_garbage_collection() -> Iterator[None]:
 class Problems:
     """Collects problems while a round is read. Those without an analyte make the round unusable."""
 
-    __slots__ = ("_found", "_more", "_number")
+    __slots__ = ("_found", "_more", "_number", "_told")
 
     def __init__(self) -> None:
         self._found: list[Problem] = []
+        self._told: set[Problem] = set()
         self._number: dict[tuple[str, str | None], int] = {}
         self._more: dict[tuple[str, str | None], int] = {}
 
@@ -45,12 +46,16 @@ class Problems:
         analyte: str | None = None,
     ) -> None:
         """Note one problem; ``analyte`` is ``None`` for one that makes the whole round unusable."""
+        problem = Problem(file, line, column, value, what, remedy, analyte)
+        if problem in self._told:
+            return  # an analyte that stands in the plan twice meets each problem twice
         key = (file, analyte)
         self._number[key] = self._number.get(key, 0) + 1
         if self._number[key] > MOST:
             self._more[key] = self._more.get(key, 0) + 1
             return
-        self._found.append(Problem(file, line, column, value, what, remedy, analyte))
+        self._told.add(problem)
+        self._found.append(problem)
 
     def unusable(self) -> tuple[Problem, ...]:
         """What makes the whole round unusable, in the order in which it was found."""

@@ -42,11 +42,12 @@ class Origin:
 
 @dataclass(frozen=True, slots=True)
 class ReadPlan:
-    """The plan with what only reading the tables needs."""
+    """The plan with what only reading the tables needs. ``unsound``: analytes with procedures wrongly named."""
 
     plan: RoundPlan
     files: schema.FilesKeys
     ignored_procedures: Mapping[str, tuple[str, ...]]
+    unsound: frozenset[str]
 
 
 def parse_toml(text: str, problems: Problems) -> dict[str, Any] | None:
@@ -164,7 +165,7 @@ def built(
         a.name: tuple(clean_name(p) for p in a.comparison.ignore_procedures)
         for a in keys.analyte if a.comparison is not None
     }
-    return ReadPlan(plan, keys.files, ignored)
+    return ReadPlan(plan, keys.files, ignored, frozenset(builder.unsound))
 
 
 class _Builder:
@@ -176,6 +177,7 @@ class _Builder:
     ) -> None:
         self.text, self.problems, self.levels, self.origins = text, problems, levels, origins
         self.name = ""
+        self.unsound: set[str] = set()
 
     def note(self, path: Path, value: object, what: str, remedy: str, origin: Origin | None = None) -> None:
         source = origin or self.origins.get(self.name)
@@ -203,7 +205,8 @@ class _Builder:
             low, high = keys.measuring_interval
             interval = (float(low), float(high))
             if not low < high:
-                self.note((*path, "measuring_interval"), [low, high], "must ascend", "write [lowest, highest]")
+                shown = f"[{low:g}, {high:g}]"
+                self.note((*path, "measuring_interval"), shown, "must ascend", "write [lowest, highest]")
         if keys.comparison is None:
             for origin, level in self.levels.get(name, []):
                 self.note(
@@ -227,6 +230,8 @@ class _Builder:
             self.note((*path, "candidate"), None, "names no procedure", "name at least one candidate")
         if comparative in candidates:
             self.note((*path, "candidate"), comparative, "is the comparative procedure too", "name another candidate")
+        if not candidates or comparative in candidates:
+            self.unsound.add(name)
         if len(set(candidates)) < len(candidates):
             self.note((*path, "candidate"), ", ".join(candidates), "names a procedure twice", "name each once")
         if isinstance(keys.variance_ratio, str):

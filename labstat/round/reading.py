@@ -39,13 +39,13 @@ def read_round(folder: str | Path, *, only: Sequence[str] = ()) -> Round:
     if made is None:
         raise RoundError(problems.all())
     plan, changed = made
-    broken = bool(problems.unusable())
     chosen = _chosen(plan, only, problems)
+    broken = bool(problems.unusable())
     with no_garbage_collection():
         data = _Tables(files, plan, problems).read(chosen)
     if problems.unusable():
         # where the plan is broken, a row that does not fit it may be right: only rows of sound analytes are told
-        sound = {analyte.name for analyte in plan.plan.analytes} - changed
+        sound = {analyte.name for analyte in plan.plan.analytes} - changed - plan.unsound
         raise RoundError([p for p in problems.all() if not broken or p.analyte is None or p.analyte in sound])
     by_analyte = problems.of_analytes()
     names = {analyte.name for analyte in plan.plan.analytes}
