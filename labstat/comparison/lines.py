@@ -24,6 +24,13 @@ INNER = {"ordinary": 499, "deming": 499, "weighted-deming": 199, "passing-bablok
 """Methods, and how many second-level resamples calibrate each (the dearer ones get fewer)."""
 
 METHODS = tuple(INNER)
+
+MOST_CALIBRATED = 1000
+"""Passing-Bablok pairs above which the level is not calibrated: a second bootstrap of n² slopes would take minutes."""
+
+MOST_PAIRS = 3000
+"""Passing-Bablok pairs above which the n² slopes would not fit in modest memory."""
+
 RANK = "rank"
 
 
@@ -94,8 +101,8 @@ def fit_line(
     are resampled together. ``seed=None`` draws a fresh one and records it. The order of the pairs does not matter.
 
     Raises :class:`ArgumentError` for bad input and :class:`NotComputableError` where the line does not exist (all
-    results equal; no positive relation). When not to use it: below 20 pairs, a range narrower than the error, curved
-    relations; see each method.
+    results equal; no positive relation; more than 3000 pairs for Passing-Bablok, which is not calibrated above 1000).
+    When not to use it: below 20 pairs, a range narrower than the error, curved relations; see each method.
     """
     first, second = checked_pairs(x, y)
     if method not in METHODS:
@@ -114,6 +121,8 @@ def fit_line(
     if not np.all(np.isfinite(estimate)):
         raise NotComputableError(_why_not(method, first, second))
     inner = INNER[method] if interval in ("calibrated", "percentile", RANK) else 0
+    if method == "passing-bablok" and first.size > MOST_CALIBRATED:
+        inner = 0
     units = first.size
     if clusters is not None:
         members = cluster_members(clusters, order)
@@ -200,6 +209,10 @@ def _statistic(
     method: str, x: Array, y: Array, variance_ratio: float, level: float, lowest: float, order: npt.NDArray[np.intp]
 ) -> tuple[Statistic, RankInterval | None, int | None, int | None]:
     if method == "passing-bablok":
+        if x.size > MOST_PAIRS:
+            raise NotComputableError(
+                f"no Passing-Bablok line is computed for more than {MOST_PAIRS} pairs, and there are {x.size}"
+            )
         pairs = pair_slopes(x, y, places=order)
         if pairs.slopes.size == 0:
             raise NotComputableError(_why_not(method, x, y))

@@ -61,6 +61,9 @@ def tails(sample: Sample, *, interval: str, level: float) -> Tails:
             return Tails(
                 alpha / 2, 1.0 - alpha / 2, "percentile", 0.0, attained, "calibrated", calibration.reason
             )
+    if interval == "calibrated" and sample.inner is None:
+        too_many = "there are too many units for a second bootstrap"
+        return Tails(alpha / 2, 1.0 - alpha / 2, "percentile", 0.0, None, "calibrated", too_many)
     if interval == "bca":
         low, high, reason = _bca(sample, alpha)
         if reason is not None:

@@ -287,3 +287,14 @@ def test_percent_differences_of_results_at_zero_are_refused() -> None:
 def test_the_line_is_reached_from_the_package_itself() -> None:
     """``labstat.fit_line`` is the documented entry."""
     assert labstat.fit_line is fit_line
+
+
+def test_a_large_passing_bablok_study_is_not_calibrated_and_a_larger_one_is_refused() -> None:
+    """Above 1000 pairs the percentile interval takes the calibrated one's place by name; above 3000 no line."""
+    truth = np.linspace(1.0, 100.0, 3001)
+    y = truth + np.random.default_rng(1).normal(0.0, 1.0, 3001)
+    fit = fit_line(truth[:1001], y[:1001], resamples=99, seed=1)
+    assert (fit.slope.interval, fit.slope.replaced) == ("percentile", "calibrated")
+    assert "too many units" in str(fit.slope.reason)
+    with pytest.raises(NotComputableError, match="3000 pairs"):
+        fit_line(truth, y, resamples=99, seed=1)
