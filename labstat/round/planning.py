@@ -134,10 +134,10 @@ def validated(raw: dict[str, Any], text: str, problems: Problems) -> tuple[schem
                 problems.add(PLAN, line_of(text, path), key_words(path), value_of(item), what, remedy)
         analytes = raw.get("analyte")
         changed = {path[1] for path, _ in seen if path[0] == "analyte" and len(path) > 1}
-        names = {
+        names = [
             analyte.get("name") for index, analyte in enumerate(analytes if isinstance(analytes, list) else [])
             if index in changed and isinstance(analyte, dict)
-        }
+        ]
         keys = mended(raw)
         return None if keys is None else (keys, frozenset(clean_name(name) for name in names if isinstance(name, str)))
 

@@ -62,7 +62,7 @@ class FileKeys(Strict):
     wide: dict[str, Text | list[Text]] = {}
 
 
-Files = str | FileKeys | list[str | FileKeys]
+Files = Text | FileKeys | list[Text | FileKeys]
 
 
 class FilesKeys(Strict):
