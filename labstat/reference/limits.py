@@ -84,17 +84,23 @@ def limits_of_group(
 ) -> ReferenceLimits:
     """The same for checked values, among which -inf and +inf stand for results outside the measuring interval.
 
-    Never raises for what the values are: ``notes`` say what could not be computed, ``failure`` why nothing could.
+    Where there are any of these, ``"auto"`` takes ranks whatever the number of values. Never raises for what the values
+    are: ``notes`` say what could not be computed, ``failure`` why nothing could.
     """
     n = values.size
-    used = ("rank" if n >= RANK_FROM else "robust") if method == "auto" else method
+    outside = int(np.count_nonzero(~np.isfinite(values)))
+    by_rank = n >= RANK_FROM or outside > 0  # results without a number have a rank all the same
+    used = ("rank" if by_rank else "robust") if method == "auto" else method
     nothing = ReferenceLimits(n, used, method, probabilities, None, None, (), seed)
     if n < minimum_n:
         return replace(nothing, notes=(f"{_values(n)}: no limits are computed below {minimum_n}",))
     if used == "rank":
-        return _by_rank(np.sort(values), nothing, interval, level)
-    if not np.all(np.isfinite(values)):
-        outside = int(np.count_nonzero(~np.isfinite(values)))
+        made_by_rank = _by_rank(np.sort(values), nothing, interval, level)
+        if outside == 0:
+            return made_by_rank
+        taken = f"{outside} of {_values(n)} lie outside the measuring interval and take part by their rank"
+        return replace(made_by_rank, notes=(taken, *made_by_rank.notes))
+    if outside:
         sentence = f"{outside} of {_values(n)} lie outside the measuring interval, and the robust method needs numbers"
         return replace(nothing, failure=f"{sentence}: ask for method rank")
     try:

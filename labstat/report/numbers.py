@@ -4,7 +4,8 @@ from __future__ import annotations
 
 import math
 
-MINUS = "\u2212"
+from labstat.judgement.wording import MINUS, plain
+
 NONE = "–"
 THIN = "\u202f"
 NOTHING = 1e-12
@@ -65,7 +66,6 @@ def p_value(p: float) -> str:
     return "p < 0.001" if p < 0.001 else f"p = {p:.3f}"
 
 
-def plain(value: float) -> str:
-    """A level or a bound as the plan wrote it: as many decimals as it needs."""
-    text = f"{abs(value):.10f}".rstrip("0").rstrip(".")
-    return (MINUS if value < 0 else "") + text
+__all__ = [
+    "MINUS", "NONE", "number", "p_value", "percent", "plain", "signed", "signed_span", "significant", "span",
+]

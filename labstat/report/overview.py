@@ -7,13 +7,13 @@ from collections.abc import Sequence
 from reportlab.platypus import Flowable, KeepTogether, Paragraph, Spacer, Table, TableStyle
 
 from labstat.judgement.model import Finding, Judgement
-from labstat.report.axes import ACCENT, ALARM, FAINT, INK, SOFT
+from labstat.report.axes import ACCENT, ALARM, INK, SOFT
 from labstat.report.fonts import BOLD, markup
 from labstat.report.frame import Bookmark, document, usable_width
 from labstat.report.model import OverviewEntry, RunContext
 from labstat.report.page_one import nearest_first
 from labstat.report.share_bar import share_axis, share_bar
-from labstat.report.styles import BODY, HEAD, SECTION, SMALL, TITLE, bold_lead, boxed, table, text
+from labstat.report.styles import BODY, HEAD, SECTION, SMALL, TITLE, bold_lead, boxed, ruled, table, text
 from labstat.report.words import allowed, count, finding_number
 
 MANY = (
@@ -69,16 +69,7 @@ def _rows(entries: Sequence[OverviewEntry], wide: float) -> Table:
         share_axis(width=bar, height=9), text("Findings", HEAD), text("Next", HEAD),
     ]]
     rows += [_row(entry, bar) for entry in entries]
-    grid = Table(rows, colWidths=list(widths), repeatRows=1, hAlign="LEFT")
-    grid.setStyle(
-        TableStyle([
-            ("VALIGN", (0, 0), (-1, -1), "TOP"), ("VALIGN", (0, 0), (-1, 0), "BOTTOM"),
-            ("LINEBELOW", (0, 0), (-1, 0), 0.8, INK), ("LINEBELOW", (0, 1), (-1, -1), 0.3, FAINT),
-            ("LEFTPADDING", (0, 0), (-1, -1), 2), ("RIGHTPADDING", (0, 0), (-1, -1), 4),
-            ("TOPPADDING", (0, 0), (-1, -1), 2.5), ("BOTTOMPADDING", (0, 0), (-1, -1), 3),
-        ])
-    )
-    return grid
+    return ruled(rows, widths, pad=2.5)
 
 
 def _row(entry: OverviewEntry, bar: float) -> list[Flowable | list[Flowable]]:

@@ -6,7 +6,7 @@ from reportlab.lib.colors import white
 from reportlab.platypus import Flowable, KeepTogether, Paragraph, Spacer, Table, TableStyle
 
 from labstat.judgement.model import Finding, Judgement
-from labstat.report.axes import ALARM, FAINT, INK, SOFT
+from labstat.report.axes import ALARM, INK, SOFT
 from labstat.report.differences import difference_plot
 from labstat.report.fonts import BOLD, markup
 from labstat.report.frame import Bookmark, usable_height, usable_width
@@ -26,6 +26,7 @@ from labstat.report.styles import (
     beside,
     bold_lead,
     boxed,
+    ruled,
     table,
     text,
 )
@@ -131,7 +132,7 @@ def _questions(study: StudyResult, judgement: Judgement, wide: float, most: int)
     widths = (wide * 0.19, wide * 0.21, wide * 0.20, bar + 8, wide - wide * 0.60 - bar - 8)
     chosen = nearest_first(judgement.findings)[:most]
     kept = [finding for finding in judgement.findings if finding in chosen]
-    rows: list[list[Flowable]] = [[
+    rows: list[list[Flowable | list[Flowable]]] = [[
         text("Is the bias allowed?", HEAD), text("Bias and its interval", HEAD), text("Allowed, and by what", HEAD),
         share_axis(width=bar, height=9), text("Finding", HEAD),
     ]]
@@ -141,22 +142,15 @@ def _questions(study: StudyResult, judgement: Judgement, wide: float, most: int)
             words.append(text(f"counts as {finding.counts}", SMALL))
             if finding.rests_on:
                 words.append(text(finding.rests_on, SMALL, most=110))
-        allowance = [text(allowed(finding, plan.decimals, plan.unit)), text(finding.source or "", SMALL, most=70)]
+        allowance: list[Flowable] = [
+            text(allowed(finding, plan.decimals, plan.unit)), text(finding.source or "", SMALL, most=70)
+        ]
         rows.append([
             text(f"At {finding.where}"),
-            text(finding_number(finding, plan.decimals, plan.unit)), allowance,  # type: ignore[list-item]
-            share_bar(finding, width=bar, height=13), words,  # type: ignore[list-item]
+            text(finding_number(finding, plan.decimals, plan.unit)), allowance,
+            share_bar(finding, width=bar, height=13), words,
         ])
-    grid = Table(rows, colWidths=list(widths), hAlign="LEFT")
-    grid.setStyle(
-        TableStyle([
-            ("VALIGN", (0, 0), (-1, -1), "TOP"), ("VALIGN", (0, 0), (-1, 0), "BOTTOM"),
-            ("LINEBELOW", (0, 0), (-1, 0), 0.8, INK), ("LINEBELOW", (0, 1), (-1, -1), 0.3, FAINT),
-            ("LEFTPADDING", (0, 0), (-1, -1), 2), ("RIGHTPADDING", (0, 0), (-1, -1), 4),
-            ("TOPPADDING", (0, 0), (-1, -1), 2), ("BOTTOMPADDING", (0, 0), (-1, -1), 2.5),
-        ])
-    )
-    story: list[Flowable] = [text("What the evidence says", SECTION), grid]
+    story: list[Flowable] = [text("What the evidence says", SECTION), ruled(rows, widths, pad=2.0)]
     left = len(judgement.findings) - len(kept)
     if left:
         more = count(left, "more question is", "more questions are")

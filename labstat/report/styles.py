@@ -41,8 +41,7 @@ def bold_lead(lead: str, words: str, style: ParagraphStyle = SMALL) -> Paragraph
 
 
 def table(
-    head: Sequence[str], rows: Sequence[Sequence[Cell]], widths: Sequence[float], *, right: Sequence[int] = (),
-    repeat: bool = True,
+    head: Sequence[str], rows: Sequence[Sequence[Cell]], widths: Sequence[float], *, right: Sequence[int] = ()
 ) -> Table:
     """A table with a ruled head; columns in ``right`` are set to the right. Text cells wrap."""
     made: list[list[Flowable]] = [
@@ -52,7 +51,12 @@ def table(
         [text(cell, RIGHT if i in right else SMALL) if isinstance(cell, str) else cell for i, cell in enumerate(row)]
         for row in rows
     )
-    grid = Table(made, colWidths=list(widths), repeatRows=1 if repeat else 0, hAlign="LEFT")
+    return ruled(made, widths)
+
+
+def ruled(rows: Sequence[Sequence[Flowable | list[Flowable]]], widths: Sequence[float], *, pad: float = 1.5) -> Table:
+    """Cells in a table with a ruled head that repeats on every page."""
+    grid = Table([list(row) for row in rows], colWidths=list(widths), repeatRows=1, hAlign="LEFT")
     grid.setStyle(
         TableStyle([
             ("VALIGN", (0, 0), (-1, -1), "TOP"),
@@ -60,7 +64,7 @@ def table(
             ("LINEBELOW", (0, 0), (-1, 0), 0.8, INK),
             ("LINEBELOW", (0, 1), (-1, -1), 0.3, FAINT),
             ("LEFTPADDING", (0, 0), (-1, -1), 2), ("RIGHTPADDING", (0, 0), (-1, -1), 4),
-            ("TOPPADDING", (0, 0), (-1, -1), 1.5), ("BOTTOMPADDING", (0, 0), (-1, -1), 2),
+            ("TOPPADDING", (0, 0), (-1, -1), pad), ("BOTTOMPADDING", (0, 0), (-1, -1), pad + 0.5),
         ])
     )
     return grid

@@ -227,3 +227,14 @@ def test_counts_outside_an_interval_are_strict_and_have_exact_intervals() -> Non
     assert made.below_low == pytest.approx(stats.beta.ppf(0.025, 2, 39), abs=1e-12)
     assert made.below_high == pytest.approx(stats.beta.ppf(0.975, 3, 38), abs=1e-12)
     assert outside_interval(np.arange(5.0), low=None, high=3.0).below is None
+
+
+def test_auto_takes_ranks_where_results_lie_outside_the_measuring_interval_and_robust_refuses() -> None:
+    values = np.concatenate([[-np.inf], np.random.default_rng(1).normal(50.0, 5.0, 59)])
+    ask = {"probabilities": BOTH, "interval": "percentile", "level": 0.9, "resamples": 99, "seed": 1}
+    made = limits_of_group(values, method="auto", **ask)
+    assert made.method == "rank"
+    assert "take part by their rank" in made.notes[0]
+    refused = limits_of_group(values, method="robust", **ask)
+    assert (refused.lower, refused.upper) == (None, None)
+    assert "needs numbers" in str(refused.failure)
