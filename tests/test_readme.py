@@ -73,9 +73,13 @@ def test_the_readme_says_what_each_exit_status_means() -> None:
     assert re.findall(r"^\| (\d) \|", section("Your own round"), re.MULTILINE) == ["0", "1", "2"]
 
 
-def test_every_python_name_in_the_readme_exists() -> None:
-    for name in re.findall(r"labstat\.([a-z_]+)\(", README):
-        assert hasattr(labstat, name), name
+def test_the_python_example_of_the_readme_runs_as_it_stands() -> None:
+    (example,) = re.findall(r"```python\n(.*?)```", README, re.DOTALL)
+    x = [52.0, 61, 70, 84, 95, 110, 135, 160, 190, 230, 270, 310]
+    names: dict[str, object] = {"x": x, "y": [1.02 * value + (-1) ** i for i, value in enumerate(x)]}
+    names["values"] = [40 + 0.25 * i for i in range(130)]
+    exec(example, names)
+    assert {"labstat", "fit", "limits"} <= set(names)
 
 
 @pytest.mark.parametrize("words", [
