@@ -27,7 +27,9 @@ def analyte_report(study: StudyResult, judgement: Judgement, context: RunContext
         story.append(text(words))
     for result in study.comparisons:
         shown_already = result is leading_comparison(study, judgement)
-        story += comparison_pages(result, plan, wide=wide, with_differences=not shown_already)
+        story += comparison_pages(
+            result, plan, judgement.findings, wide=wide, with_differences=not shown_already
+        )
     story += reference_pages(study, wide=wide, level=context.plan.limit_level)
     story += caution_pages(judgement, wide)
     story += row_pages(study, wide)

@@ -63,3 +63,12 @@ def markup(text: str, *, most: int = 400) -> str:
 def width(text: str, size: float, *, font: str = TEXT) -> float:
     """Width of drawn text in points."""
     return float(pdfmetrics.stringWidth(text, font, size))
+
+
+def fitted(text: str, size: float, room: float) -> str:
+    """Text cut with an ellipsis where it would be wider than ``room`` points."""
+    if width(text, size) <= room:
+        return text
+    while text and width(text + "…", size) > room:
+        text = text[:-1]
+    return text + "…"

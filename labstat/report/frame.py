@@ -11,7 +11,8 @@ from reportlab.pdfgen.canvas import Canvas
 from reportlab.platypus import BaseDocTemplate, Flowable, Frame, PageTemplate
 
 from labstat.report.axes import INK, SOFT
-from labstat.report.fonts import TEXT, register, shown
+from labstat.report.fonts import TEXT, fitted, register, shown
+from labstat.report.fonts import width as text_width
 
 MARGIN = 42.0
 TOP, BOTTOM = 46.0, 46.0
@@ -79,8 +80,10 @@ def _numbered(left: str, right: str) -> type[Canvas]:
             wide, high = self._pagesize  # type: ignore[attr-defined]
             self.setFont(TEXT, 7)
             self.setFillColor(INK)
-            self.drawString(MARGIN, high - 30, left)
-            self.drawRightString(wide - MARGIN, high - 30, f"{right}{pages}")
+            told = f"{right}{pages}"
+            room = wide - 2 * MARGIN - 12 - text_width(told, 7)
+            self.drawString(MARGIN, high - 30, fitted(left, 7, room))
+            self.drawRightString(wide - MARGIN, high - 30, told)
             self.setStrokeColor(SOFT)
             self.setLineWidth(0.4)
             self.line(MARGIN, high - 35, wide - MARGIN, high - 35)
@@ -108,5 +111,5 @@ def document(
         topPadding=0, bottomPadding=0,
     )
     made.addPageTemplates([PageTemplate("page", [frame])])
-    made.build(list(story), canvasmaker=_numbered(shown(left, most=90), shown(right, most=70)))
+    made.build(list(story), canvasmaker=_numbered(shown(left), shown(right, most=60)))
     return target.getvalue()

@@ -91,7 +91,7 @@ def _row(entry: OverviewEntry, bar: float) -> list[Flowable | list[Flowable]]:
     if worst is not None:
         level = [
             text(worst.where), text(finding_number(worst, entry.decimals, entry.unit)),
-            text("allowed " + allowed(worst, entry.decimals, entry.unit)),
+            text("allowed " + allowed(worst, entry.unit)),
         ]
         picture = share_bar(worst, width=bar, height=13)
     return [title, [text(size) for size in sizes] or [text("–")], level, picture, _words(judgement),
@@ -140,7 +140,7 @@ def _made(context: RunContext, wide: float) -> list[Flowable]:
 
 def _signature(context: RunContext, wide: float) -> list[Flowable]:
     lines = Table(
-        [["Name", context.plan.reviewer, "Date", ""], ["Signature", "", "", ""]],
+        [["Name", text(context.plan.reviewer, SMALL, most=60), "Date", ""], ["Signature", "", "", ""]],
         colWidths=[wide * 0.12, wide * 0.5, wide * 0.08, wide * 0.25], rowHeights=[16, 20],
     )
     lines.setStyle(

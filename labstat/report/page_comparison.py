@@ -2,15 +2,19 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 from reportlab.platypus import Flowable, KeepTogether, Spacer
 
+from labstat.judgement.model import Finding
+from labstat.judgement.wording import some
 from labstat.report.bias_plot import bias_plot
 from labstat.report.differences import difference_plot
 from labstat.report.frame import Bookmark
 from labstat.report.numbers import number, p_value, percent, plain, signed, significant, span
 from labstat.report.scatter import scatter
 from labstat.report.styles import SECTION, SMALL, beside, bold_lead, table, text
-from labstat.report.words import INTERVALS, METHODS, bias_decimals, how, with_interval
+from labstat.report.words import INTERVALS, METHODS, allowed, bias_decimals, how, with_interval
 from labstat.resample.estimate import Estimate
 from labstat.round.model import AnalytePlan
 from labstat.study.results import BiasAtLevel, ComparisonResult
@@ -19,7 +23,7 @@ MOST_LISTED = 12
 
 
 def comparison_pages(
-    result: ComparisonResult, analyte: AnalytePlan, *, wide: float, with_differences: bool
+    result: ComparisonResult, analyte: AnalytePlan, findings: Sequence[Finding], *, wide: float, with_differences: bool
 ) -> list[Flowable]:
     """Figures and tables of one candidate; ``with_differences`` where page one does not show its difference plot."""
     data = result.data
@@ -39,7 +43,7 @@ def comparison_pages(
         story.append(difference_plot(result, analyte, width=wide, height=150))
     story += _lines(result, wide)
     if result.levels:
-        story += _biases(result, analyte, wide)
+        story += _biases(result, analyte, findings, wide)
     story += _differences(result, analyte, wide)
     story += _checks(result, analyte, wide)
     return story
@@ -95,32 +99,44 @@ def span_of_rank(made: Estimate) -> str:
     return f"{significant(made.rank_low, 4)} to {significant(made.rank_high, 4)}"
 
 
-def _biases(result: ComparisonResult, analyte: AnalytePlan, wide: float) -> list[Flowable]:
+def _biases(
+    result: ComparisonResult, analyte: AnalytePlan, findings: Sequence[Finding], wide: float
+) -> list[Flowable]:
     digits = bias_decimals(analyte.decimals)
-    rows, remarks = [], []
+    by_level = {finding.at: finding for finding in findings if finding.candidate == result.data.candidate}
+    judged, rests, remarks = [], [], []
     for item in result.levels:
-        rows.append([
-            plain(item.level.at), with_interval(item.bias.bias, digits, sign=True),
-            with_interval(item.by_day.bias, digits, sign=True) if item.by_day is not None else "–",
-            with_interval(item.leading.percent, 1, sign=True), item.leading_unit, str(item.near),
-            _without(item, digits), with_interval(item.without_outliers.bias, digits, sign=True)
-            if item.without_outliers is not None else "–",
+        finding = by_level.get(item.level.at)
+        level = plain(item.level.at)
+        judged.append([
+            level, with_interval(item.leading.bias, digits, sign=True),
+            with_interval(item.leading.percent, 1, sign=True), item.leading_unit,
+            "–" if finding is None else allowed(finding, analyte.unit), item.level.source or "–", _word(finding),
+            "–" if finding is None or finding.settles_at_n is None else str(finding.settles_at_n),
         ])
-        made = item.leading.bias
-        if made.replaced:
-            asked, used = (INTERVALS.get(kind, kind) for kind in (made.replaced, made.interval))
-            remarks.append(f"At {plain(item.level.at)}: asked for {asked}, but {made.reason}; {used} was used.")
-        if item.censored_near:
-            remarks.append(
-                f"At {plain(item.level.at)}: censored results within a factor of two, specimens "
-                f"{', '.join(item.censored_near[:6])}."
-            )
+        changes = item.changes
+        rests.append([
+            level, with_interval(item.bias.bias, digits, sign=True),
+            with_interval(item.by_day.bias, digits, sign=True) if item.by_day is not None else "–",
+            str(item.near), _without(item, digits),
+            with_interval(item.without_outliers.bias, digits, sign=True) if item.without_outliers is not None else "–",
+            f"{changes.up} up, {changes.down} down",
+        ])
+        remarks += _remarks(item)
     unit = analyte.unit
-    head = [f"Level ({unit})", f"Bias by {result.unit_of_resampling} ({unit})", f"Bias by days ({unit})",
-            "Leading bias (%)", "Leads", "n near", "Furthest without one", "Without flagged"]
-    widths = [wide * w for w in (0.08, 0.19, 0.19, 0.17, 0.08, 0.05, 0.12, 0.12)]
     story: list[Flowable] = [
-        text("Bias at the decision levels", SECTION), table(head, rows, widths, right=(5,)),
+        text("Bias at the decision levels", SECTION),
+        table(
+            [f"Level ({unit})", f"Leading bias ({unit})", "Leading bias (%)", "Units", "Allowed", "Source", "Finding",
+             "n to settle"],
+            judged, [wide * w for w in (0.07, 0.17, 0.16, 0.09, 0.15, 0.14, 0.15, 0.07)], right=(7,),
+        ),
+        text("What the biases rest on", SECTION),
+        table(
+            [f"Level ({unit})", f"Bias by {result.unit_of_resampling} ({unit})", f"Bias by days ({unit})", "n near",
+             f"Furthest without one ({unit})", f"Without flagged ({unit})", "Change side"],
+            rests, [wide * w for w in (0.07, 0.18, 0.18, 0.06, 0.2, 0.18, 0.13)], right=(3,),
+        ),
     ]
     story += [text(remark) for remark in remarks]
     errors = [item.bias.bias.monte_carlo_error for item in result.levels]
@@ -129,11 +145,34 @@ def _biases(result: ComparisonResult, analyte: AnalytePlan, wide: float) -> list
     error = "" if worst is None else f"Largest Monte-Carlo error of a bound {significant(worst, 2)} {unit}. "
     story.append(text(
         f"Bias = intercept + (slope − 1) × level, from the {METHODS[result.reported.method]} line; "
-        f"{how(first)}. {error}n near: specimens within "
-        "25 % of the level. Days lead where their interval is the wider one; it is a t interval of the jackknife over "
-        "days. Furthest without one: the interval without the single specimen that moves it most."
+        f"{how(first)}. {error}n near: specimens within 25 % of the level. Units: what was resampled; days lead where "
+        "their interval is the wider one (a t interval of the jackknife over days). Furthest without one: the interval "
+        "without the single specimen that moves it most. n to settle: a rough guide for a chance of about 80 %."
     ))
     return story
+
+
+def _remarks(item: BiasAtLevel) -> list[str]:
+    """What must be said of one level's bias beside its numbers."""
+    remarks = []
+    made, level = item.leading.bias, plain(item.level.at)
+    if made.replaced:
+        asked, used = (INTERVALS.get(kind, kind) for kind in (made.replaced, made.interval))
+        remarks.append(f"At {level}: asked for {asked}, but {made.reason}; {used} was used.")
+    if item.censored_near:
+        near = some(list(item.censored_near), 6)
+        remarks.append(f"At {level}: censored results within a factor of two, specimens {near}.")
+    return remarks
+
+
+def _word(finding: Finding | None) -> str:
+    """A finding with what it counts as and on what it rests."""
+    if finding is None:
+        return "no criterion"
+    word = str(finding.finding)
+    if finding.counts != finding.finding:
+        word += f", counts as {finding.counts}"
+    return f"{word}: {finding.rests_on}" if finding.rests_on else word
 
 
 def _without(item: BiasAtLevel, digits: int) -> str:
@@ -194,6 +233,8 @@ def _checks(result: ComparisonResult, analyte: AnalytePlan, wide: float) -> list
                                                "removed."),
             table(head, rows, [wide * w for w in (0.24, 0.2, 0.2, 0.12, 0.12)], right=(1, 2, 3, 4)),
         ]))
+        if len(result.outliers) > MOST_LISTED:
+            story.append(text(f"and {len(result.outliers) - MOST_LISTED} more: all are in results.json"))
     if result.data.censored:
         head = ["Censored specimen", f"{result.data.comparative} ({analyte.unit})",
                 f"{result.data.candidate} ({analyte.unit})"]

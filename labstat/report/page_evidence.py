@@ -112,7 +112,7 @@ def method_pages(study: StudyResult, context: RunContext, wide: float) -> list[F
     story.append(bold_lead("Deviations from the plan.", deviations.rstrip(".") + "."))
     story.append(bold_lead("Prepared by.", f"{r.prepared_by}; reviewer {r.reviewer}."))
     if context.notes:
-        story.append(bold_lead("Noticed while reading.", "; ".join(context.notes[:12]) + "."))
+        story.append(bold_lead("Noticed while reading.", "; ".join(context.notes) + "."))
     return story
 
 

@@ -30,7 +30,7 @@ from labstat.report.styles import (
     table,
     text,
 )
-from labstat.report.words import INTERVALS, allowed, bias_decimals, count, finding_number, quoted, with_interval
+from labstat.report.words import INTERVALS, allowed, count, finding_number, quoted, with_interval
 from labstat.study.results import ComparisonResult, GroupResult, StudyResult
 
 ROWS = (9, 7, 6, 5, 4, 3)
@@ -40,6 +40,7 @@ LEAST_FIGURE, BEST_FIGURE = 120.0, 270.0
 """Height of the figure on page one: what the rest leaves, within these bounds."""
 
 MOST_DANGERS = 3
+MOST_LEVELS = 4
 ORDER = {"beyond": 0, "not covered": 1, "unsettled": 2, "within": 3}
 
 
@@ -143,7 +144,7 @@ def _questions(study: StudyResult, judgement: Judgement, wide: float, most: int)
             if finding.rests_on:
                 words.append(text(finding.rests_on, SMALL, most=110))
         allowance: list[Flowable] = [
-            text(allowed(finding, plan.decimals, plan.unit)), text(finding.source or "", SMALL, most=70)
+            text(allowed(finding, plan.unit)), text(finding.source or "", SMALL, most=70)
         ]
         rows.append([
             text(f"At {finding.where}"),
@@ -198,7 +199,7 @@ def _patients(study: StudyResult) -> list[Flowable]:
     story: list[Flowable] = [text("For patients", SECTION)]
     for result in study.comparisons:
         moved = []
-        for item in result.levels[:4]:
+        for item in result.levels[:MOST_LEVELS]:
             c = item.changes
             moved.append(
                 f"at {plain(c.at)}: {c.up} up ({percent(c.up_low, 0)} to {percent(c.up_high, 0)}), "
@@ -212,20 +213,22 @@ def _patients(study: StudyResult) -> list[Flowable]:
             )
         story.append(bold_lead(f"{result.data.candidate}:", words + _largest(result, plan.decimals, plan.unit)))
         jumps = ", ".join(
-            f"{signed(item.leading.bias.estimate, bias_decimals(plan.decimals))} at {plain(item.level.at)}"
-            for item in result.levels[:4]
+            f"{signed(item.leading.bias.estimate, plan.decimals)} at {plain(item.level.at)}"
+            for item in result.levels[:MOST_LEVELS]
         )
         if jumps:
-            story.append(text(f"Expected jump of serial results on the day of change: {jumps} {plan.unit}."))
+            more = len(result.levels) - MOST_LEVELS
+            rest = f" {count(more, 'more level', 'more levels')} in the tables that follow." if more > 0 else ""
+            story.append(text(f"Expected jump of serial results on the day of change: {jumps} {plan.unit}.{rest}"))
     return story
 
 
 def _largest(result: ComparisonResult, decimals: int, unit: str) -> str:
-    d = result.data.y - result.data.x
-    at = int(max(range(d.size), key=lambda i: abs(float(d[i]))))
+    at = result.largest
+    x, y = float(result.data.x[at]), float(result.data.y[at])
     return (
-        f"Largest single difference: {signed(float(d[at]), decimals)} {unit}, specimen {result.data.specimens[at]} "
-        f"({number(float(result.data.x[at]), decimals)} and {number(float(result.data.y[at]), decimals)})."
+        f"Largest single difference: {signed(y - x, decimals)} {unit}, specimen {result.data.specimens[at]} "
+        f"({number(x, decimals)} and {number(y, decimals)})."
     )
 
 
@@ -285,7 +288,11 @@ def _decision(context: RunContext, wide: float) -> list[Flowable]:
     boxes.setStyle(TableStyle([("FONT", (0, 0), (-1, -1), "Text", 8.5), ("LEFTPADDING", (0, 0), (-1, -1), 0),
                                ("TOPPADDING", (0, 0), (-1, -1), 1), ("BOTTOMPADDING", (0, 0), (-1, -1), 2)]))
     lines = Table(
-        [["Restriction or reason", "", "", ""], ["Name", context.plan.reviewer, "Date", ""], ["Signature", "", "", ""]],
+        [
+            ["Restriction or reason", "", "", ""],
+            ["Name", text(context.plan.reviewer, SMALL, most=60), "Date", ""],
+            ["Signature", "", "", ""],
+        ],
         colWidths=[wide * 0.17, wide * 0.45, wide * 0.07, wide * 0.25], rowHeights=[15, 15, 17],
     )
     lines.setStyle(

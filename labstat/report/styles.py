@@ -30,14 +30,14 @@ DANGER = ParagraphStyle("danger", parent=BODY, fontSize=8, leading=10.4, textCol
 Cell = str | Flowable
 
 
-def text(words: str, style: ParagraphStyle = SMALL, *, most: int = 400) -> Paragraph:
+def text(words: str, style: ParagraphStyle = SMALL, *, most: int = 3000) -> Paragraph:
     """User or program text as a paragraph: nothing in it is markup."""
     return Paragraph(markup(words, most=most), style)
 
 
 def bold_lead(lead: str, words: str, style: ParagraphStyle = SMALL) -> Paragraph:
     """A paragraph that opens with bold words."""
-    return Paragraph(f'<font name="{BOLD}">{markup(lead)}</font> {markup(words, most=900)}', style)
+    return Paragraph(f'<font name="{BOLD}">{markup(lead)}</font> {markup(words, most=6000)}', style)
 
 
 def table(

@@ -6,7 +6,7 @@ from dataclasses import replace
 
 from labstat.judgement.model import Finding
 from labstat.judgement.rules_reference import undercovers
-from labstat.judgement.wording import decimals_that_tell
+from labstat.judgement.wording import finding_decimals
 from labstat.report.numbers import number, plain, signed, signed_span, span
 from labstat.resample.estimate import Estimate
 
@@ -28,13 +28,6 @@ def bias_decimals(decimals: int) -> int:
     return decimals + 1
 
 
-def finding_decimals(finding: Finding, decimals: int) -> int:
-    """Decimals at which the printed interval does not contradict the finding."""
-    bounds = [value for value in (finding.low, finding.high) if value is not None]
-    edges = [value for value in (finding.allowed_low, finding.allowed_high) if value is not None]
-    return decimals_that_tell(bounds, edges, bias_decimals(decimals))
-
-
 def finding_number(finding: Finding, decimals: int, unit: str) -> str:
     """Estimate with interval and unit: "+3.1 (+1.9 to +4.2) µmol/L"."""
     digits = finding_decimals(finding, decimals)
@@ -43,19 +36,13 @@ def finding_number(finding: Finding, decimals: int, unit: str) -> str:
     return f"{signed(finding.estimate, digits)} ({signed_span(finding.low, finding.high, digits)}) {unit}"
 
 
-def allowed(finding: Finding, decimals: int, unit: str) -> str:
+def allowed(finding: Finding, unit: str) -> str:
     """What is allowed, in units: "±9 µmol/L (8 or 10 %)"."""
     low, high = finding.allowed_low, finding.allowed_high
     if low is None or high is None:
         return finding.allowance or "no criterion"
-    digits = finding_decimals(finding, decimals)
-    edges = f"±{_short(high, digits)}" if low == -high else f"{_short(low, digits)} to {_short(high, digits)}"
+    edges = f"±{plain(high)}" if low == -high else f"{plain(low)} to {plain(high)}"
     return f"{edges} {unit} ({finding.allowance})"
-
-
-def _short(value: float, digits: int) -> str:
-    text = number(value, digits)
-    return plain(value) if len(plain(value)) <= len(text) else text
 
 
 def with_interval(made: Estimate | None, digits: int, *, sign: bool = False) -> str:

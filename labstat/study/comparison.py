@@ -81,6 +81,7 @@ def compare(
         correlation=_correlation(data),
         equal_pairs=int(np.count_nonzero(data.x == data.y)),
         equal_after_shift=max(_equal(data.x[1:], data.y[:-1]), _equal(data.x[:-1], data.y[1:])),
+        largest=int(np.argmax(np.abs(data.y - data.x))),
         replicates=(max(map(len, data.x_replicates)), max(map(len, data.y_replicates))),
     )
     return result, tuple(missing)

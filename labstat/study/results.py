@@ -67,6 +67,7 @@ class ComparisonResult:
     correlation: float | None  # Pearson; None when a procedure gave one value only
     equal_pairs: int  # specimens with x == y
     equal_after_shift: int  # specimens whose y equals the previous or next specimen's x (the larger of both shifts)
+    largest: int  # index of the specimen with the largest absolute difference
     replicates: tuple[int, int]  # largest number of replicates, comparative and candidate
 
 
