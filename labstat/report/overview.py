@@ -140,7 +140,7 @@ def _made(context: RunContext, wide: float) -> list[Flowable]:
 
 def _signature(context: RunContext, wide: float) -> list[Flowable]:
     lines = Table(
-        [["Name", text(context.plan.reviewer, SMALL, most=60), "Date", ""], ["Signature", "", "", ""]],
+        [["Name", text(context.plan.reviewer, SMALL, most=46), "Date", ""], ["Signature", "", "", ""]],
         colWidths=[wide * 0.12, wide * 0.5, wide * 0.08, wide * 0.25], rowHeights=[16, 20],
     )
     lines.setStyle(

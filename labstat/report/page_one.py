@@ -290,7 +290,7 @@ def _decision(context: RunContext, wide: float) -> list[Flowable]:
     lines = Table(
         [
             ["Restriction or reason", "", "", ""],
-            ["Name", text(context.plan.reviewer, SMALL, most=60), "Date", ""],
+            ["Name", text(context.plan.reviewer, SMALL, most=46), "Date", ""],
             ["Signature", "", "", ""],
         ],
         colWidths=[wide * 0.17, wide * 0.45, wide * 0.07, wide * 0.25], rowHeights=[15, 15, 17],
