@@ -15,11 +15,26 @@ Array = npt.NDArray[np.float64]
 
 @dataclass(frozen=True, slots=True)
 class Bias:
-    """Bias a + (b - 1) X at one level, in units and in percent of the level (``None`` at a level of 0)."""
+    """Bias a + (b - 1) X at one level, in units and in percent of the level (``None`` at a level of 0).
+
+    ``estimate``, ``low`` and ``high`` are those of the bias in units.
+    """
 
     at: float
     bias: Estimate
     percent: Estimate | None
+
+    @property
+    def estimate(self) -> float:
+        return self.bias.estimate
+
+    @property
+    def low(self) -> float | None:
+        return self.bias.low
+
+    @property
+    def high(self) -> float | None:
+        return self.bias.high
 
 
 @dataclass(frozen=True, slots=True)

@@ -129,13 +129,13 @@ def _biases(
         table(
             [f"Level ({unit})", f"Leading bias ({unit})", "Leading bias (%)", "Units", "Allowed", "Source", "Finding",
              "n to settle"],
-            judged, [wide * w for w in (0.07, 0.17, 0.16, 0.09, 0.15, 0.14, 0.15, 0.07)], right=(7,),
+            judged, [wide * w for w in (0.08, 0.16, 0.14, 0.09, 0.13, 0.12, 0.22, 0.06)], right=(7,),
         ),
         text("What the biases rest on", SECTION),
         table(
             [f"Level ({unit})", f"Bias by {result.unit_of_resampling} ({unit})", f"Bias by days ({unit})", "n near",
              f"Furthest without one ({unit})", f"Without flagged ({unit})", "Change side"],
-            rests, [wide * w for w in (0.07, 0.18, 0.18, 0.06, 0.2, 0.18, 0.13)], right=(3,),
+            rests, [wide * w for w in (0.08, 0.18, 0.17, 0.06, 0.2, 0.18, 0.13)], right=(3,),
         ),
     ]
     story += [text(remark) for remark in remarks]

@@ -190,7 +190,7 @@ class _Work:
         """Names of the resampled units in the order of the fit."""
         if self.subjects is None:
             return [self.data.specimens[i] for i in fit.order]
-        return list(dict.fromkeys(str(self.subjects[i][-1]) for i in fit.order))
+        return [name for _, name in dict.fromkeys(self.subjects[i] for i in fit.order)]
 
 
 def _repeated_subjects(data: ComparisonData) -> list[tuple[str, str]] | None:

@@ -298,3 +298,11 @@ def test_a_large_passing_bablok_study_is_not_calibrated_and_a_larger_one_is_refu
     assert "too many units" in str(fit.slope.reason)
     with pytest.raises(NotComputableError, match="3000 pairs"):
         fit_line(truth, y, resamples=99, seed=1)
+
+
+def test_a_bias_can_be_read_like_an_estimate() -> None:
+    """One estimate a level: estimate, low and high are those in units."""
+    x = np.linspace(1.0, 100.0, 30)
+    first, second = fit_line(x, 1.1 * x + np.sin(x), method="deming", resamples=99, seed=1).bias_at([10, 50])
+    assert (first.estimate, first.low, first.high) == (first.bias.estimate, first.bias.low, first.bias.high)
+    assert (first.at, second.at) == (10.0, 50.0)
