@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from reportlab.platypus import Flowable, Spacer
+from reportlab.platypus import Flowable, KeepTogether, Spacer
 
 from labstat.judgement.model import Judgement
 from labstat.report.frame import Bookmark
@@ -100,8 +100,8 @@ def method_pages(study: StudyResult, context: RunContext, wide: float) -> list[F
         "the same inputs, seed and versions give the same numbers and the same bytes.",
     ))
     versions = ", ".join(f"{name} {version}" for name, version in context.versions.items())
-    story.append(bold_lead("Versions.", versions + "."))
-    story.append(table(["Input", "SHA-256"], [[i.path, i.sha256] for i in context.inputs], [wide * 0.3, wide * 0.7]))
+    inputs = table(["Input", "SHA-256"], [[i.path, i.sha256] for i in context.inputs], [wide * 0.3, wide * 0.7])
+    story.append(KeepTogether([bold_lead("Versions.", versions + "."), inputs]))
     approved = r.approved
     if approved is None:
         words = "The plan names no approval of the criteria."
