@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Hashable, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 import numpy.typing as npt
@@ -53,8 +53,8 @@ class LineFit:
     seed: int
     interval: str
     level: float
-    draws: Draws | None = None
-    order: tuple[int, ...] = ()
+    draws: Draws | None = field(default=None, repr=False)
+    order: tuple[int, ...] = field(default=(), repr=False)
 
     def bias_at(self, levels: npt.ArrayLike) -> tuple[Bias, ...]:
         """Bias intercept + (slope - 1) X at each level X, from the same resamples as the line.
