@@ -21,7 +21,9 @@ def difference_plot(result: ComparisonResult, analyte: AnalytePlan, *, width: fl
     middle = (data.x + data.y) / 2.0
     with np.errstate(divide="ignore", invalid="ignore"):
         d = 100.0 * (data.y - data.x) / middle if percent else data.y - data.x
-    allowed = _allowed(result, percent=percent)
+    # a level outside the specimens has no place in the figure, so its allowance must not stretch the axis
+    reach = float(middle.min()), float(middle.max())
+    allowed = [item for item in _allowed(result, percent=percent) if reach[0] <= item[0] <= reach[1]]
     values = [float(v) for v in d if np.isfinite(v)] + [edge for _, *edges in allowed for edge in edges] + [0.0]
     agreed = result.difference
     if agreed is not None:

@@ -122,6 +122,14 @@ def _dangers(judgement: Judgement, wide: float) -> list[Flowable]:
     return [Spacer(0, 4), boxed(lines, wide, line=ALARM)]
 
 
+def few_near(finding: Finding) -> bool:
+    """Unsettled although the whole interval lies inside the allowance: too few specimens lie near the level."""
+    low, high, bottom, top = finding.low, finding.high, finding.allowed_low, finding.allowed_high
+    if finding.finding != "unsettled" or low is None or high is None or bottom is None or top is None:
+        return False
+    return bottom <= low and high <= top
+
+
 def nearest_first(findings: tuple[Finding, ...]) -> list[Finding]:
     """Findings in the order of what they ask of the reader."""
     return sorted(findings, key=lambda finding: ORDER[finding.finding])
@@ -139,6 +147,8 @@ def _questions(study: StudyResult, judgement: Judgement, wide: float, most: int)
     ]]
     for finding in kept:
         words: list[Flowable] = [Paragraph(f'<font name="{BOLD}">{markup(finding.finding)}</font>', SMALL)]
+        if few_near(finding):
+            words.append(text("the interval is inside, but too few specimens lie near the level"))
         if finding.counts != finding.finding:
             words.append(text(f"counts as {finding.counts}", SMALL))
             if finding.rests_on:

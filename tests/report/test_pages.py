@@ -163,3 +163,20 @@ def test_the_overview_puts_what_failed_first_and_says_what_many_findings_mean() 
     assert " ".join(MANY.split()) in text
     links = [a.get_object()["/A"]["/URI"] for page in reader.pages for a in page.get("/Annots", [])]
     assert sorted(links) == ["reports/Bad.pdf", "reports/Good.pdf"]
+
+
+def test_an_interval_inside_the_allowance_that_is_unsettled_says_why() -> None:
+    data = _analyte(_levels([398.0]))
+    keep = np.abs(data.comparisons[0].x - 398.0) > 0.25 * 398.0
+    keep[np.argmax(data.comparisons[0].x)] = True
+    c = data.comparisons[0]
+    few = replace(
+        c, specimens=tuple(s for s, k in zip(c.specimens, keep, strict=True) if k), x=c.x[keep], y=c.y[keep],
+        x_replicates=tuple((float(v),) for v in c.x[keep]), y_replicates=tuple((float(v),) for v in c.y[keep]),
+        subjects=(None,) * int(keep.sum()), days=(None,) * int(keep.sum()),
+    )
+    level = float(np.max(few.x)) - 1.0
+    asked = replace(data.plan.comparison, levels=_levels([level]))
+    _, pages, judgement = _report(replace(data, comparisons=(few,), plan=replace(data.plan, comparison=asked)))
+    assert judgement.findings[0].finding == "unsettled"
+    assert "too few specimens lie near the level" in pages[0]
