@@ -141,6 +141,7 @@ def comparison(*levels: BiasAtLevel, candidate: str = "Procedure B", n: int = 60
         "correlation": 0.99,
         "equal_pairs": 2,
         "equal_after_shift": 0,
+        "largest": 0,
         "replicates": (1, 1),
     }
     return ComparisonResult(**{**values, **more})
