@@ -7,10 +7,10 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Literal
 
-from reportlab.graphics.shapes import Circle, Drawing, Line, Polygon, PolyLine, Rect, String
+from reportlab.graphics.shapes import Circle, Drawing, Line, Path, Polygon, PolyLine, Rect, String
 from reportlab.lib.colors import Color, white
 
-from labstat.report.fonts import TEXT, width
+from labstat.report.fonts import TEXT, fitted, width
 from labstat.report.ticks import linear_ticks, log_ticks, tick_labels
 
 INK = Color(0.10, 0.12, 0.15)
@@ -20,6 +20,10 @@ SHADE = Color(0.80, 0.84, 0.89)
 ACCENT = Color(0.06, 0.29, 0.51)
 ALARM = Color(0.62, 0.16, 0.10)
 SIZE = 7.0
+CIRCLES = 300
+"""Specimens up to which each is a circle of its own."""
+
+DIAMOND = 1.9
 
 Anchor = Literal["start", "middle", "end"]
 
@@ -133,8 +137,13 @@ class Axes:
             self.drawing, self.left, self.bottom, self.right - self.left, self.top - self.bottom, fill=None,
             stroke=INK, line=0.6,
         )
-        self.text((self.left + self.right) / 2, self.bottom - 21, x_title, anchor="middle")
-        self.text(self.left, self.top + 5, y_title)
+        self.titles(x_title, y_title)
+
+    def titles(self, x_title: str, y_title: str) -> None:
+        """The names of both axes; one that is too long loses its end, never its unit."""
+        middle, edge = (self.left + self.right) / 2, float(self.drawing.width)
+        self.text(middle, self.bottom - 21, _title(x_title, 2 * min(middle, edge - middle)), anchor="middle")
+        self.text(self.left, self.top + 5, _title(y_title, edge - self.left))
 
     def text(
         self, x: float, y: float, text: str, *, anchor: Anchor = "start", size: float = SIZE, colour: Color = INK,
@@ -201,6 +210,30 @@ class Axes:
         b, d = sorted(min(max(v, self.bottom), self.top) for v in (b, d))
         put_rect(self.drawing, a, b, c - a, d - b, fill=fill, stroke=stroke)
 
+    def dots(self, points: Sequence[tuple[float, float, bool]]) -> None:
+        """Measured points (x, y, flagged) in their order; very many as small diamonds in one piece, flagged ones last.
+
+        A circle each would make the drawing of a thousand specimens slow and large.
+        """
+        if len(points) <= CIRCLES:
+            for x, y, flagged in points:
+                self.dot(x, y, flagged=flagged)
+            return
+        path = Path(fillColor=white, strokeColor=ACCENT, strokeWidth=0.6)
+        for x, y, flagged in points:
+            px, py = self.at(x, y)
+            if flagged or not (self.left <= px <= self.right and self.bottom <= py <= self.top):
+                continue
+            path.moveTo(px - DIAMOND, py)
+            for cx, cy in ((px, py + DIAMOND), (px + DIAMOND, py), (px, py - DIAMOND)):
+                path.lineTo(cx, cy)
+            path.closePath()
+        if path.operators:
+            self.drawing.add(path)
+        for x, y, flagged in points:
+            if flagged:
+                self.dot(x, y, flagged=True)
+
     def dot(self, x: float, y: float, *, size: float = 1.7, flagged: bool = False) -> None:
         """A measured point; a flagged one is a hollow square with a cross, seen without colour."""
         px, py = self.at(x, y)
@@ -212,6 +245,12 @@ class Axes:
             self.rule(px - s, py - s, px + s, py + s, ALARM, 0.8)
         else:
             self.drawing.add(Circle(px, py, size, fillColor=white, strokeColor=ACCENT, strokeWidth=0.7))
+
+
+def _title(words: str, room: float) -> str:
+    name, opened, unit = words.rpartition(" (")
+    tail = opened + unit if opened else ""
+    return fitted(name if opened else words, SIZE, room - width(tail, SIZE)) + tail if words else ""
 
 
 def clip(

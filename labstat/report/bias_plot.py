@@ -75,8 +75,7 @@ def _frame(axes: Axes, result: ComparisonResult, analyte: AnalytePlan, *, percen
     for index, item in enumerate(result.levels):
         if index % step == 0:
             axes.text(axes.at(index + 0.5, axes.ys.low)[0], axes.bottom - 10, plain(item.level.at), anchor="middle")
-    axes.text((axes.left + axes.right) / 2, axes.bottom - 21, with_unit("Level", analyte.unit), anchor="middle")
-    axes.text(axes.left, axes.top + 5, with_unit("Bias", unit))
+    axes.titles(with_unit("Level", analyte.unit), with_unit("Bias", unit))
 
 
 def _allowance(axes: Axes, index: int, item: BiasAtLevel, factor: float) -> None:

@@ -7,7 +7,7 @@ from reportlab.graphics.shapes import Drawing
 
 from labstat.report.axes import ACCENT, INK, SHADE, SOFT, Axes, linear_scale, log_scale
 from labstat.report.fonts import register
-from labstat.report.plot_parts import KeyEntry, key, level_marks, specimen_names, wide_range, with_unit
+from labstat.report.plot_parts import KeyEntry, crowded, key, level_marks, specimen_names, wide_range, with_unit
 from labstat.round.model import AnalytePlan
 from labstat.study.results import ComparisonResult
 
@@ -40,7 +40,14 @@ def difference_plot(result: ComparisonResult, analyte: AnalytePlan, *, width: fl
         x_title=with_unit("Mean of both procedures", analyte.unit),
         y_title=with_unit(f"{data.candidate} minus {data.comparative}", unit), y_ticks=6,
     )
-    for at, low, high in allowed:
+    if crowded([item[0] for item in allowed]):
+        edges = sorted(allowed)
+        for side in (1, 2):
+            axes.curve([item[0] for item in edges], [item[side] for item in edges], colour=INK, wide=1.2)
+        allowed_bars = []
+    else:
+        allowed_bars = allowed
+    for at, low, high in allowed_bars:
         x, top = axes.at(at, high)
         bottom = axes.at(at, low)[1]
         if axes.left <= x <= axes.right:
@@ -52,9 +59,10 @@ def difference_plot(result: ComparisonResult, analyte: AnalytePlan, *, width: fl
     axes.segment(axes.xs.low, 0.0, axes.xs.high, 0.0, colour=SOFT, wide=0.8, dash=(4, 2.5))
     _agreement(axes, result)
     flagged = {outlier.specimen for outlier in result.outliers}
-    for specimen, x, y in zip(data.specimens, middle, d, strict=True):
-        if np.isfinite(y):
-            axes.dot(float(x), float(y), flagged=specimen in flagged)
+    axes.dots([
+        (float(x), float(y), specimen in flagged)
+        for specimen, x, y in zip(data.specimens, middle, d, strict=True) if np.isfinite(y)
+    ])
     places = {specimen: i for i, specimen in enumerate(data.specimens)}
     specimen_names(
         axes,

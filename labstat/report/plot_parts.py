@@ -28,17 +28,31 @@ def wide_range(result: ComparisonResult) -> bool:
     return low > 0.0 and high / low >= LOG_FROM
 
 
+CROWD = 12
+"""Levels up to which each has its own mark in a figure."""
+
+
+def crowded(levels: Sequence[float]) -> bool:
+    """Whether marks of all the levels would hide the specimens."""
+    return len(levels) > CROWD
+
+
 def level_marks(axes: Axes, levels: Sequence[float]) -> None:
-    """A small mark with its number on the upper edge for each level; numbers that would collide are left out."""
+    """A small mark with its number on the upper edge for each level; numbers that would collide are left out.
+
+    Of many levels only those have a mark whose numbers have room.
+    """
     end = -1e9
     for level in sorted(levels):
         x, _ = axes.at(level, axes.ys.low)
         if not axes.left <= x <= axes.right:
             continue
-        axes.rule(x, axes.bottom, x, axes.top, SOFT, 0.5, (1, 2))
         label = plain(level)
         half = width(label, 6.5) / 2
-        if x - half > end + 2:
+        named = x - half > end + 2
+        if named or not crowded(levels):
+            axes.rule(x, axes.bottom, x, axes.top, SOFT, 0.5, (1, 2))
+        if named:
             put_rect(axes.drawing, x - half - 1, axes.top - 10, 2 * half + 2, 9, fill=white)
             axes.text(x, axes.top - 8, label, anchor="middle", size=6.5, colour=SOFT)
             end = x + half

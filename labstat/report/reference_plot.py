@@ -10,7 +10,7 @@ from reportlab.graphics.shapes import Drawing, Line
 from reportlab.lib.colors import white
 
 from labstat.report.axes import ACCENT, FAINT, INK, SHADE, SIZE, SOFT, Axes, Scale, linear_scale, put_rect
-from labstat.report.fonts import register, shown
+from labstat.report.fonts import fitted, register, shown
 from labstat.report.fonts import width as text_width
 from labstat.report.plot_parts import KeyEntry, key, with_unit
 from labstat.report.words import quoted
@@ -91,6 +91,6 @@ def _group(
         for edge in (group.adopted.low, group.adopted.high):
             if edge is not None:
                 axes.segment(edge, 0.0, edge, axes.ys.high, colour=SOFT, wide=1.2, dash=(3, 2))
-    label = f"{shown(group_words(group), most=50)}, n = {group.limits.n}"
+    label = f"{fitted(shown(group_words(group), most=50), SIZE, 0.6 * (right - left))}, n = {group.limits.n}"
     put_rect(drawing, left + 2, top - 11.5, text_width(label, SIZE) + 4, 10, fill=white)  # a limit may pass behind it
     axes.text(left + 4, top - 9, label)

@@ -7,7 +7,7 @@ from reportlab.graphics.shapes import Drawing
 
 from labstat.report.axes import ACCENT, INK, SHADE, SOFT, Axes, linear_scale, log_scale
 from labstat.report.fonts import register
-from labstat.report.plot_parts import KeyEntry, key, level_marks, specimen_names, wide_range, with_unit
+from labstat.report.plot_parts import KeyEntry, crowded, key, level_marks, specimen_names, wide_range, with_unit
 from labstat.round.model import AnalytePlan
 from labstat.study.results import ComparisonResult
 
@@ -39,8 +39,10 @@ def scatter(result: ComparisonResult, analyte: AnalytePlan, *, width: float, hei
     line = [fit.intercept.estimate + fit.slope.estimate * float(x) for x in grid]
     axes.curve(list(map(float, grid)), line, colour=ACCENT, wide=1.3)
     flagged = {outlier.specimen for outlier in result.outliers}
-    for specimen, x, y in zip(data.specimens, data.x, data.y, strict=True):
-        axes.dot(float(x), float(y), flagged=specimen in flagged)
+    axes.dots([
+        (float(x), float(y), specimen in flagged)
+        for specimen, x, y in zip(data.specimens, data.x, data.y, strict=True)
+    ])
     specimen_names(axes, [(outlier.specimen, outlier.x, outlier.y) for outlier in result.outliers])
     entries: list[KeyEntry] = [
         ("line", ACCENT, 1.3, None), ("its band", SHADE, 5.0, None), ("no difference", SOFT, 0.8, (4, 2.5)),
@@ -52,7 +54,13 @@ def scatter(result: ComparisonResult, analyte: AnalytePlan, *, width: float, hei
 
 
 def _allowed(axes: Axes, result: ComparisonResult) -> None:
-    """What is allowed around identity, drawn at each level as an upright bar with caps."""
+    """What is allowed around identity, drawn at each level as an upright bar with caps; as two lines for many."""
+    asked = [(item.level.at, item.level.allowable) for item in result.levels]
+    edges = sorted((at, *(at + edge for edge in allowance.at(at))) for at, allowance in asked if allowance is not None)
+    if crowded([item[0] for item in edges]):
+        for side in (1, 2):
+            axes.curve([item[0] for item in edges], [item[side] for item in edges], colour=INK, wide=1.0)
+        return
     for item in result.levels:
         allowance, at = item.level.allowable, item.level.at
         if allowance is None:

@@ -37,6 +37,7 @@ def tick_labels(ticks: list[float]) -> list[str]:
     step = min(b - a for a, b in itertools.pairwise(ticks))
     decimals = max(0, -math.floor(math.log10(step) + 1e-9))
     ratios = [b / a for a, b in itertools.pairwise(ticks) if a > 0]
-    if ratios and max(ratios) / min(ratios) < 3 and min(ratios) > 1.5 and ticks[-1] / ticks[0] >= 10:
+    rising = len(ratios) == len(ticks) - 1  # marks at or below zero are on no logarithmic scale
+    if rising and max(ratios) / min(ratios) < 3 and min(ratios) > 1.5 and ticks[-1] / ticks[0] >= 10:
         return [plain(float(f"{tick:.6g}")) for tick in ticks]
     return [number(tick, decimals) for tick in ticks]
