@@ -2,17 +2,20 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 from reportlab.platypus import Flowable, PageBreak
 
 from labstat.judgement.model import Judgement
-from labstat.report.fonts import missing
+from labstat.report.fonts import missing, strings
 from labstat.report.frame import document, usable_width
 from labstat.report.model import RunContext
 from labstat.report.page_comparison import comparison_pages
 from labstat.report.page_evidence import caution_pages, method_pages, row_pages
-from labstat.report.page_one import leading_comparison, page_one
+from labstat.report.page_one import leading_comparison, on_page_one, page_one, patients
 from labstat.report.page_reference import reference_pages
 from labstat.report.styles import text
+from labstat.report.words import no_sign
 from labstat.study.results import StudyResult
 
 
@@ -21,15 +24,16 @@ def analyte_report(study: StudyResult, judgement: Judgement, context: RunContext
     plan = study.data.plan
     wide = usable_width(context.plan.page)
     story: list[Flowable] = [*page_one(study, judgement, context), PageBreak()]
-    lost = missing(_user_text(study, context))
+    lost = missing(_user_text(study, judgement, context))
     if lost:
-        words = f"The embedded font has no sign for {len(lost)} characters of the names; they show as \ufffd."
-        story.append(text(words))
+        story.append(text(no_sign(lost)))
     for result in study.comparisons:
         shown_already = result is leading_comparison(study, judgement)
         story += comparison_pages(
             result, plan, judgement.findings, wide=wide, with_differences=not shown_already
         )
+        if result not in on_page_one(study, judgement):
+            story += patients(study, [result])
     story += reference_pages(study, wide=wide, level=context.plan.limit_level)
     story += caution_pages(judgement, wide)
     story += row_pages(study, wide)
@@ -42,11 +46,11 @@ def analyte_report(study: StudyResult, judgement: Judgement, context: RunContext
     )
 
 
-def _user_text(study: StudyResult, context: RunContext) -> str:
-    """All names that the laboratory wrote and the pages show."""
-    plan, r = study.data.plan, context.plan
-    names = [plan.name, plan.unit, plan.specimen_type or "", r.title, r.laboratory, r.prepared_by, r.reviewer]
+def _user_text(study: StudyResult, judgement: Judgement, context: RunContext) -> str:
+    """All text of the laboratory's that the pages show."""
+    parts: list[object] = [study.data.plan, replace(context.plan, analytes=()), context.inputs, context.notes]
     for result in study.comparisons:
-        names += [result.data.comparative, result.data.candidate, *result.data.specimens]
-    names += [row.reason for row in study.data.left_out]
-    return "".join(names)
+        parts += [result.data.comparative, result.data.candidate, result.data.specimens, result.data.censored]
+    parts += [group.partition for group in study.groups]
+    parts += [study.data.left_out, judgement]
+    return "".join(strings(parts))

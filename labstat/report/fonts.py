@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator, Mapping
+from dataclasses import fields, is_dataclass
 from importlib.resources import files
 from typing import Final
 from xml.sax.saxutils import escape
@@ -14,6 +16,8 @@ BOLD: Final = "Text-Bold"
 
 _BIDI = {0x200E, 0x200F, 0x061C, *range(0x202A, 0x202F), *range(0x2066, 0x206A)}
 REPLACEMENT = "\ufffd"
+WIDEST = 1.7
+"""No sign of the fonts is wider than this many times their size."""
 
 
 def register() -> None:
@@ -48,6 +52,22 @@ def missing(text: str) -> str:
     return "".join(dict.fromkeys(sign for sign in clean(text) if ord(sign) not in glyphs))
 
 
+def strings(thing: object) -> Iterator[str]:
+    """Every text inside frozen values, mappings and sequences, whatever the depth."""
+    if isinstance(thing, str):
+        yield thing
+    elif isinstance(thing, Mapping):
+        for key, value in thing.items():
+            yield from strings(key)
+            yield from strings(value)
+    elif isinstance(thing, (list, tuple)):
+        for part in thing:
+            yield from strings(part)
+    elif is_dataclass(thing):
+        for field in fields(thing):
+            yield from strings(getattr(thing, field.name))
+
+
 def shown(text: str, *, most: int = 400) -> str:
     """Text as it can be drawn: characters without a glyph become U+FFFD, endless text is cut with an ellipsis."""
     lost = set(missing(text))
@@ -65,10 +85,15 @@ def width(text: str, size: float, *, font: str = TEXT) -> float:
     return float(pdfmetrics.stringWidth(text, font, size))
 
 
-def fitted(text: str, size: float, room: float) -> str:
+def fitted(text: str, size: float, room: float, *, font: str = TEXT) -> str:
     """Text cut with an ellipsis where it would be wider than ``room`` points."""
-    if width(text, size) <= room:
+    if len(text) * size * WIDEST <= room or width(text, size, font=font) <= room:
         return text
-    while text and width(text + "…", size) > room:
-        text = text[:-1]
-    return text + "…"
+    keep, above = 0, len(text)
+    while keep < above:
+        half = (keep + above + 1) // 2
+        if width(text[:half] + "…", size, font=font) <= room:
+            keep = half
+        else:
+            above = half - 1
+    return text[:keep] + "…"

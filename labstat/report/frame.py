@@ -43,7 +43,7 @@ class Bookmark(Flowable):
 
     def __init__(self, title: str, level: int = 0) -> None:
         super().__init__()
-        self.title, self.level = title, level
+        self.title, self.level = shown(title, most=80), level
         self.width = self.height = 0
 
     def wrap(self, available_width: float, available_height: float) -> tuple[float, float]:

@@ -3,18 +3,23 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 
 from reportlab.platypus import Flowable, KeepTogether, Paragraph, Spacer, Table, TableStyle
 
 from labstat.judgement.model import Finding, Judgement
 from labstat.report.axes import ACCENT, ALARM, INK, SOFT
-from labstat.report.fonts import BOLD, markup
+from labstat.report.fonts import BOLD, markup, missing, shown, strings
 from labstat.report.frame import Bookmark, document, usable_width
 from labstat.report.model import OverviewEntry, RunContext
 from labstat.report.page_one import nearest_first
 from labstat.report.share_bar import share_axis, share_bar
-from labstat.report.styles import BODY, HEAD, SECTION, SMALL, TITLE, bold_lead, boxed, ruled, table, text
-from labstat.report.words import allowed, count, finding_number
+from labstat.report.styles import BODY, HEAD, PADS, SECTION, SMALL, TITLE, bold_lead, boxed, ruled, table, text
+from labstat.report.words import allowed, count, finding_number, no_sign, reach
+
+CELL_LINES = 5
+MOST_SIZES = 8
+"""Lines of a cell and counts of an analyte in its row: a row must fit on a page."""
 
 MANY = (
     "At most 2.5 % a finding would be within on one side even if the true bias sat at the allowance; requiring all "
@@ -31,14 +36,23 @@ def overview_report(entries: Sequence[OverviewEntry], context: RunContext) -> by
     wide = usable_width(plan.page)
     ordered = sorted(entries, key=_urgency)
     story: list[Flowable] = [
-        Bookmark("Overview"), text(plan.title, TITLE),
-        text(f"{plan.laboratory}; {plan.issued or 'not dated'}; {count(len(entries), 'analyte', 'analytes')}", BODY),
+        Bookmark("Overview"), text(plan.title, TITLE, wide=wide, lines=2),
+        text(
+            f"{shown(plan.laboratory, most=120)}; {plan.issued or 'not dated'}; "
+            f"{count(len(entries), 'analyte', 'analytes')}", BODY,
+        ),
         Spacer(0, 4),
     ]
+    lost = missing("".join(strings([replace(plan, analytes=()), context.inputs, ordered])))
+    if lost:
+        story.append(text(no_sign(lost)))
     failed = [entry for entry in ordered if entry.outcome != "computed" or entry.reason]
     if failed:
         lines: list[Flowable] = [text("Could not be computed", HEAD)]
-        lines += [bold_lead(f"{entry.name}:", entry.reason or "no reason given") for entry in failed]
+        lines += [
+            bold_lead(f"{shown(entry.name, most=60)}:", entry.reason or "no reason given", wide=wide - 12)
+            for entry in failed
+        ]
         story += [boxed(lines, wide, line=ALARM), Spacer(0, 4)]
     story += [text("Analytes, those that need the director first", SECTION), _rows(ordered, wide)]
     story += [Spacer(0, 6), bold_lead("What many findings mean.", MANY)]
@@ -68,11 +82,11 @@ def _rows(entries: Sequence[OverviewEntry], wide: float) -> Table:
         text("Analyte", HEAD), text("n and days", HEAD), text("Level that asks most", HEAD),
         share_axis(width=bar, height=9), text("Findings", HEAD), text("Next", HEAD),
     ]]
-    rows += [_row(entry, bar) for entry in entries]
+    rows += [_row(entry, bar, widths) for entry in entries]
     return ruled(rows, widths, pad=2.5)
 
 
-def _row(entry: OverviewEntry, bar: float) -> list[Flowable | list[Flowable]]:
+def _row(entry: OverviewEntry, bar: float, widths: Sequence[float]) -> list[Flowable | list[Flowable]]:
     name = f'<font name="{BOLD}">{markup(entry.name, most=60)}</font>'
     if entry.file:
         target = markup(entry.file).replace('"', "%22")
@@ -90,12 +104,15 @@ def _row(entry: OverviewEntry, bar: float) -> list[Flowable | list[Flowable]]:
     picture: Flowable = text("")
     if worst is not None:
         level = [
-            text(worst.where), text(finding_number(worst, entry.decimals, entry.unit)),
-            text("allowed " + allowed(worst, entry.unit)),
+            text(words, wide=widths[2] - PADS, lines=CELL_LINES) for words in (
+                worst.where, finding_number(worst, entry.decimals, entry.unit), "allowed " + allowed(worst, entry.unit)
+            )
         ]
         picture = share_bar(worst, width=bar, height=13)
-    return [title, [text(size) for size in sizes] or [text("–")], level, picture, _words(judgement),
-            text(judgement.next_action, most=160)]
+    counted: list[Flowable] = [text(size, wide=widths[1] - PADS, lines=CELL_LINES) for size in sizes[:MOST_SIZES]]
+    if len(sizes) > MOST_SIZES:
+        counted.append(text(f"and {len(sizes) - MOST_SIZES} more"))
+    return [title, counted or [text("–")], level, picture, _words(judgement), text(judgement.next_action, most=160)]
 
 
 def _worst(judgement: Judgement) -> Finding | None:
@@ -104,16 +121,7 @@ def _worst(judgement: Judgement) -> Finding | None:
     if not ordered:
         return None
     first = ordered[0].finding
-    return max((f for f in ordered if f.finding == first), key=_reach)
-
-
-def _reach(finding: Finding) -> float:
-    shares = [
-        abs(value / edge)
-        for value, edge in ((finding.low, finding.allowed_low), (finding.high, finding.allowed_high))
-        if value is not None and edge
-    ]
-    return max(shares, default=0.0)
+    return max((f for f in ordered if f.finding == first), key=reach)
 
 
 def _words(judgement: Judgement) -> list[Flowable]:
@@ -140,7 +148,10 @@ def _made(context: RunContext, wide: float) -> list[Flowable]:
 
 def _signature(context: RunContext, wide: float) -> list[Flowable]:
     lines = Table(
-        [["Name", text(context.plan.reviewer, SMALL, most=46), "Date", ""], ["Signature", "", "", ""]],
+        [
+            ["Name", text(context.plan.reviewer, SMALL, most=46, wide=wide * 0.5 - 14, lines=1), "Date", ""],
+            ["Signature", "", "", ""],
+        ],
         colWidths=[wide * 0.12, wide * 0.5, wide * 0.08, wide * 0.25], rowHeights=[16, 20],
     )
     lines.setStyle(

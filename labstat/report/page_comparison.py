@@ -7,13 +7,13 @@ from collections.abc import Sequence
 from reportlab.platypus import Flowable, KeepTogether, Spacer
 
 from labstat.judgement.model import Finding
-from labstat.judgement.wording import some
+from labstat.judgement.wording import finding_decimals, some
 from labstat.report.bias_plot import bias_plot
 from labstat.report.differences import difference_plot
 from labstat.report.frame import Bookmark
 from labstat.report.numbers import number, p_value, percent, plain, signed, significant, span
 from labstat.report.scatter import scatter
-from labstat.report.styles import SECTION, SMALL, beside, bold_lead, table, text
+from labstat.report.styles import SECTION, SMALL, beside, bold_lead, heading, table, text
 from labstat.report.words import INTERVALS, METHODS, allowed, bias_decimals, how, with_interval
 from labstat.resample.estimate import Estimate
 from labstat.round.model import AnalytePlan
@@ -108,8 +108,9 @@ def _biases(
     for item in result.levels:
         finding = by_level.get(item.level.at)
         level = plain(item.level.at)
+        telling = digits if finding is None else finding_decimals(finding, digits)
         judged.append([
-            level, with_interval(item.leading.bias, digits, sign=True),
+            level, with_interval(item.leading.bias, telling, sign=True),
             with_interval(item.leading.percent, 1, sign=True), item.leading_unit,
             "–" if finding is None else allowed(finding, analyte.unit), item.level.source or "–", _word(finding),
             "–" if finding is None or finding.settles_at_n is None else str(finding.settles_at_n),
@@ -125,13 +126,13 @@ def _biases(
         remarks += _remarks(item)
     unit = analyte.unit
     story: list[Flowable] = [
-        text("Bias at the decision levels", SECTION),
+        *heading("Bias at the decision levels", rows=len(judged)),
         table(
             [f"Level ({unit})", f"Leading bias ({unit})", "Leading bias (%)", "Units", "Allowed", "Source", "Finding",
              "n to settle"],
             judged, [wide * w for w in (0.08, 0.16, 0.14, 0.09, 0.13, 0.12, 0.22, 0.06)], right=(7,),
         ),
-        text("What the biases rest on", SECTION),
+        *heading("What the biases rest on", rows=len(rests)),
         table(
             [f"Level ({unit})", f"Bias by {result.unit_of_resampling} ({unit})", f"Bias by days ({unit})", "n near",
              f"Furthest without one ({unit})", f"Without flagged ({unit})", "Change side"],

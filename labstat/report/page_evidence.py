@@ -8,7 +8,7 @@ from labstat.judgement.model import Judgement
 from labstat.report.frame import Bookmark
 from labstat.report.model import RunContext
 from labstat.report.numbers import percent, plain
-from labstat.report.styles import SECTION, bold_lead, table, text
+from labstat.report.styles import SECTION, bold_lead, heading, table, text
 from labstat.report.words import METHODS
 from labstat.round.model import AnalytePlan
 from labstat.study.results import StudyResult
@@ -41,7 +41,7 @@ def caution_pages(judgement: Judgement, wide: float) -> list[Flowable]:
     ordered = sorted(judgement.cautions, key=lambda caution: WEIGHTS.index(caution.weight))
     rows = [[caution.weight, caution.code, caution.text] for caution in ordered]
     return [
-        Bookmark("Cautions", 1), text("Cautions", SECTION),
+        Bookmark("Cautions", 1), *heading("Cautions", rows=len(rows)),
         table(["Weight", "Code", "What the reviewer must know"], rows, [wide * 0.09, wide * 0.19, wide * 0.72]),
     ]
 

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 from reportlab.lib.colors import white
 from reportlab.platypus import Flowable, KeepTogether, Paragraph, Spacer, Table, TableStyle
 
@@ -18,6 +20,7 @@ from labstat.report.styles import (
     DANGER,
     HEAD,
     LEFT,
+    PADS,
     PROPOSAL,
     SECTION,
     SMALL,
@@ -30,7 +33,7 @@ from labstat.report.styles import (
     table,
     text,
 )
-from labstat.report.words import INTERVALS, allowed, count, finding_number, quoted, with_interval
+from labstat.report.words import INTERVALS, allowed, count, finding_number, quoted, reach, with_interval
 from labstat.study.results import ComparisonResult, GroupResult, StudyResult
 
 ROWS = (9, 7, 6, 5, 4, 3)
@@ -41,6 +44,10 @@ LEAST_FIGURE, BEST_FIGURE = 120.0, 270.0
 
 MOST_DANGERS = 3
 MOST_LEVELS = 4
+MOST_CANDIDATES = 2
+CELL_LINES = 4
+"""Lines of a name or an allowance in the rows of page one; the header and the tables that follow have more room."""
+
 ORDER = {"beyond": 0, "not covered": 1, "unsettled": 2, "within": 3}
 
 
@@ -57,7 +64,10 @@ def page_one(study: StudyResult, judgement: Judgement, context: RunContext) -> l
             story += _questions(study, judgement, wide, rows)
         story += _reference(study, wide)
         if study.comparisons:
-            story += _patients(study)
+            story += patients(study, [r for r in study.comparisons if r in on_page_one(study, judgement)])
+            hidden = len(study.comparisons) - MOST_CANDIDATES
+            if hidden > 0:
+                story.append(text(f"{count(hidden, 'more candidate', 'more candidates')} on the pages that follow."))
         return story
 
     room = 0.0
@@ -101,8 +111,12 @@ def _head(study: StudyResult, context: RunContext, wide: float) -> list[Flowable
         context.plan.laboratory,
         context.plan.title,
     ]
-    left: list[Flowable] = [text(f"{plan.name} ({plan.unit})", TITLE), text("; ".join(parts), LEFT)]
-    return [beside(left, [text(fact, SMALL) for fact in facts], (wide * 0.66, wide * 0.34)), Spacer(0, 5)]
+    first, second = wide * 0.66, wide * 0.34
+    left: list[Flowable] = [
+        text(f"{plan.name} ({plan.unit})", TITLE, wide=first, lines=2),
+        text("; ".join(parts), LEFT, wide=first - LEFT.rightIndent, lines=7),
+    ]
+    return [beside(left, [text(fact, SMALL, wide=second, lines=2) for fact in facts], (first, second)), Spacer(0, 5)]
 
 
 def _dangers(judgement: Judgement, wide: float) -> list[Flowable]:
@@ -115,7 +129,7 @@ def _dangers(judgement: Judgement, wide: float) -> list[Flowable]:
     if not entries:
         return []
     lines: list[Flowable] = [
-        bold_lead(lead, sentence, DANGER) for lead, sentence in entries[:MOST_DANGERS]
+        bold_lead(lead, sentence, DANGER, wide=wide - 12, lines=10) for lead, sentence in entries[:MOST_DANGERS]
     ]
     if len(entries) > MOST_DANGERS:
         lines.append(text(f"{len(entries) - MOST_DANGERS} more on the following pages", DANGER))
@@ -131,8 +145,8 @@ def few_near(finding: Finding) -> bool:
 
 
 def nearest_first(findings: tuple[Finding, ...]) -> list[Finding]:
-    """Findings in the order of what they ask of the reader."""
-    return sorted(findings, key=lambda finding: ORDER[finding.finding])
+    """Findings in the order of what they ask of the reader, in each kind those that reach furthest first."""
+    return sorted(findings, key=lambda finding: (ORDER[finding.finding], -reach(finding)))
 
 
 def _questions(study: StudyResult, judgement: Judgement, wide: float, most: int) -> list[Flowable]:
@@ -140,7 +154,7 @@ def _questions(study: StudyResult, judgement: Judgement, wide: float, most: int)
     bar = 96.0
     widths = (wide * 0.19, wide * 0.21, wide * 0.20, bar + 8, wide - wide * 0.60 - bar - 8)
     chosen = nearest_first(judgement.findings)[:most]
-    kept = [finding for finding in judgement.findings if finding in chosen]
+    kept = [finding for finding in judgement.findings if finding in chosen]  # in the plan's order
     rows: list[list[Flowable | list[Flowable]]] = [[
         text("Is the bias allowed?", HEAD), text("Bias and its interval", HEAD), text("Allowed, and by what", HEAD),
         share_axis(width=bar, height=9), text("Finding", HEAD),
@@ -154,11 +168,12 @@ def _questions(study: StudyResult, judgement: Judgement, wide: float, most: int)
             if finding.rests_on:
                 words.append(text(finding.rests_on, SMALL, most=110))
         allowance: list[Flowable] = [
-            text(allowed(finding, plan.unit)), text(finding.source or "", SMALL, most=70)
+            text(allowed(finding, plan.unit), wide=widths[2] - PADS, lines=CELL_LINES),
+            text(finding.source or "", SMALL, most=70),
         ]
         rows.append([
-            text(f"At {finding.where}"),
-            text(finding_number(finding, plan.decimals, plan.unit)), allowance,
+            text(f"At {finding.where}", wide=widths[0] - PADS, lines=CELL_LINES),
+            text(finding_number(finding, plan.decimals, plan.unit), wide=widths[1] - PADS, lines=CELL_LINES), allowance,
             share_bar(finding, width=bar, height=13), words,
         ])
     story: list[Flowable] = [text("What the evidence says", SECTION), ruled(rows, widths, pad=2.0)]
@@ -204,10 +219,17 @@ def _limit(group: GroupResult, side: str, decimals: int) -> str:
     return with_interval(chosen, decimals) + kind
 
 
-def _patients(study: StudyResult) -> list[Flowable]:
+def on_page_one(study: StudyResult, judgement: Judgement) -> list[ComparisonResult]:
+    """The comparisons whose meaning for patients stands on page one: the leading one, then in the plan's order."""
+    first = leading_comparison(study, judgement)
+    return [first, *(result for result in study.comparisons if result is not first)][:MOST_CANDIDATES]
+
+
+def patients(study: StudyResult, results: Sequence[ComparisonResult]) -> list[Flowable]:
+    """What the change means for patients: results that change side, the largest difference, the expected jump."""
     plan = study.data.plan
     story: list[Flowable] = [text("For patients", SECTION)]
-    for result in study.comparisons:
+    for result in results:
         moved = []
         for item in result.levels[:MOST_LEVELS]:
             c = item.changes
@@ -268,7 +290,7 @@ def _figure(study: StudyResult, judgement: Judgement, wide: float, high: float) 
         ) if number
     ]
     facts.append("left out: " + (", ".join(left) if left else "none"))
-    strip += [text(f"– {fact}") for fact in facts]
+    strip += [text(f"– {fact}", wide=wide * 0.32, lines=3) for fact in facts]
     if len(study.comparisons) > 1:
         strip.append(text(f"The figure shows {result.data.candidate}; the others stand on the pages that follow."))
     return [
@@ -300,7 +322,7 @@ def _decision(context: RunContext, wide: float) -> list[Flowable]:
     lines = Table(
         [
             ["Restriction or reason", "", "", ""],
-            ["Name", text(context.plan.reviewer, SMALL, most=46), "Date", ""],
+            ["Name", text(context.plan.reviewer, SMALL, most=46, wide=wide * 0.45 - 14, lines=1), "Date", ""],
             ["Signature", "", "", ""],
         ],
         colWidths=[wide * 0.17, wide * 0.45, wide * 0.07, wide * 0.25], rowHeights=[15, 15, 17],

@@ -75,3 +75,20 @@ def how(made: Estimate) -> str:
 def count(n: int, one: str, many: str) -> str:
     """"1 specimen", "14 specimens"."""
     return f"{n} {one if n == 1 else many}"
+
+
+def no_sign(lost: str) -> str:
+    """What is said of characters that the fonts cannot draw."""
+    what = count(len(lost), "character", "characters")
+    shows = "it shows" if len(lost) == 1 else "they show"
+    return f"The embedded font has no sign for {what} of the names; {shows} as \ufffd."
+
+
+def reach(finding: Finding) -> float:
+    """The largest share of the allowance that the interval reaches, on either side."""
+    shares = [
+        abs(value / edge)
+        for value, edge in ((finding.low, finding.allowed_low), (finding.high, finding.allowed_high))
+        if value is not None and edge
+    ]
+    return max(shares, default=0.0)

@@ -176,6 +176,7 @@ def test_an_interval_inside_the_allowance_that_is_unsettled_says_why() -> None:
         subjects=(None,) * int(keep.sum()), days=(None,) * int(keep.sum()),
     )
     level = float(np.max(few.x)) - 1.0
+    assert data.plan.comparison is not None
     asked = replace(data.plan.comparison, levels=_levels([level]))
     _, pages, judgement = _report(replace(data, comparisons=(few,), plan=replace(data.plan, comparison=asked)))
     assert judgement.findings[0].finding == "unsettled"
