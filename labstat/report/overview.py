@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import replace
+from urllib.parse import quote
 
 from reportlab.platypus import Flowable, KeepTogether, Paragraph, Spacer, Table, TableStyle
 
@@ -89,7 +90,7 @@ def _rows(entries: Sequence[OverviewEntry], wide: float) -> Table:
 def _row(entry: OverviewEntry, bar: float, widths: Sequence[float]) -> list[Flowable | list[Flowable]]:
     name = f'<font name="{BOLD}">{markup(entry.name, most=60)}</font>'
     if entry.file:
-        target = markup(entry.file).replace('"', "%22")
+        target = quote(entry.file, errors="replace")  # an address is ASCII; "#" in a file's name is no fragment
         name = f'<a href="{target}" color="#{ACCENT.hexval()[2:]}">{name}</a>'
     title = Paragraph(name + (f" ({markup(entry.unit, most=20)})" if entry.unit else ""), SMALL)
     sizes = [f"{what}: {n}" for what, n in entry.n]

@@ -181,3 +181,14 @@ def test_an_interval_inside_the_allowance_that_is_unsettled_says_why() -> None:
     _, pages, judgement = _report(replace(data, comparisons=(few,), plan=replace(data.plan, comparison=asked)))
     assert judgement.findings[0].finding == "unsettled"
     assert "too few specimens lie near the level" in pages[0]
+
+
+def test_a_link_to_a_report_is_a_well_formed_address() -> None:
+    """Blanks, a number sign and letters beyond ASCII are percent-encoded (RFC 3986)."""
+    study = compute(_analyte(_levels([90.0])), PLAN)
+    entry = OverviewEntry(
+        "Iron", "µmol/L", "reports/Iron in #1 é.pdf", "computed", None, (("comparison", 50),), 6, judge(study, PLAN), 0
+    )
+    reader = PdfReader(io.BytesIO(overview_report([entry], CONTEXT)))
+    links = [a.get_object()["/A"]["/URI"] for page in reader.pages for a in page.get("/Annots", [])]
+    assert links == ["reports/Iron%20in%20%231%20%C3%A9.pdf"]
